@@ -1,0 +1,107 @@
+"""The tables, one file per concept. ``APPEND_ONLY`` lists those the triggers guard."""
+
+from clinic.models.append_only import AppendOnly, Revision
+from clinic.models.intake import IntakeFile, IntakeMapping
+from clinic.models.ledger import Chain, Entry, Seal
+from clinic.models.limit_sets import Adoption, AdoptionConfirmed, LimitSetText
+from clinic.models.patients import (
+    Course,
+    Eye,
+    EyeEvent,
+    EyeState,
+    History,
+    Patient,
+    PatientStatus,
+)
+from clinic.models.people import LastSeen, Membership, User
+from clinic.models.plans import Plan
+from clinic.models.raised import Answer, EyeNow, Review
+from clinic.models.sites import ClinicDay, Scanner, Site
+from clinic.models.visits import (
+    ContactEntry,
+    Decided,
+    Draft,
+    Measured,
+    MoreAcuity,
+    MorePressure,
+    MoreTreatment,
+    NextStep,
+    Note,
+    PostedPart,
+    RecordDone,
+    Treated,
+    Visit,
+)
+
+APPEND_ONLY = (
+    Visit,
+    Measured,
+    MoreAcuity,
+    MorePressure,
+    Decided,
+    Treated,
+    MoreTreatment,
+    NextStep,
+    ContactEntry,
+    PostedPart,
+    RecordDone,
+    PatientStatus,
+    EyeState,
+    History,
+    EyeEvent,
+    Course,
+    Plan,
+    Review,
+    Answer,
+    LimitSetText,
+    Adoption,
+    AdoptionConfirmed,
+    ClinicDay,
+    Entry,
+    Seal,
+    IntakeFile,
+)
+
+__all__ = [
+    "APPEND_ONLY",
+    "Adoption",
+    "AdoptionConfirmed",
+    "Answer",
+    "AppendOnly",
+    "Chain",
+    "ClinicDay",
+    "ContactEntry",
+    "Course",
+    "Decided",
+    "Draft",
+    "Entry",
+    "Eye",
+    "EyeEvent",
+    "EyeNow",
+    "EyeState",
+    "History",
+    "IntakeFile",
+    "IntakeMapping",
+    "LastSeen",
+    "LimitSetText",
+    "Measured",
+    "Membership",
+    "MoreAcuity",
+    "MorePressure",
+    "MoreTreatment",
+    "NextStep",
+    "Note",
+    "Patient",
+    "PatientStatus",
+    "Plan",
+    "PostedPart",
+    "RecordDone",
+    "Review",
+    "Revision",
+    "Scanner",
+    "Seal",
+    "Site",
+    "Treated",
+    "User",
+    "Visit",
+]

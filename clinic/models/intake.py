@@ -1,0 +1,51 @@
+"""Files taken in, and remembered column mappings."""
+
+from django.db import models
+
+from clinic.models.append_only import AppendOnly
+from clinic.models.sites import Site
+
+
+class IntakeFile(AppendOnly):
+    """One file of past visits that was taken in, whole. The same file is refused a second time.
+
+    A missing row means the file was never taken in. Personal data: none; the file isn't kept.
+    """
+
+    site = models.ForeignKey(Site, on_delete=models.PROTECT, related_name="intake_files")
+    sha256 = models.CharField(max_length=64)
+    label = models.CharField(max_length=80, blank=True)
+    rows = models.PositiveIntegerField()
+    visits_stored = models.PositiveIntegerField()
+    cells_refused = models.PositiveIntegerField()
+    assumed = models.JSONField(default=list)
+
+    class Meta:
+        constraints = [
+            models.UniqueConstraint(fields=["site", "sha256"], name="intake_file_once_a_site"),
+        ]
+
+    def __str__(self) -> str:
+        return f"{self.label or self.sha256[:12]}"
+
+
+class IntakeMapping(models.Model):
+    """A site's remembered mapping of columns, by the header it was made for.
+
+    No row means the header is new. Personal data: none.
+    """
+
+    site = models.ForeignKey(Site, on_delete=models.PROTECT, related_name="intake_mappings")
+    header_digest = models.CharField(max_length=64)
+    mapping = models.JSONField(default=dict)
+    at = models.DateTimeField()
+
+    class Meta:
+        constraints = [
+            models.UniqueConstraint(
+                fields=["site", "header_digest"], name="intake_mapping_once_a_header"
+            ),
+        ]
+
+    def __str__(self) -> str:
+        return self.header_digest[:12]
