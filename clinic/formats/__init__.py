@@ -1,0 +1,1 @@
+"""Date and number formats: ISO dates only, whatever the language."""

@@ -1,0 +1,1 @@
+"""Forms check shape and range and return finished types; they save nothing."""

@@ -1,0 +1,1 @@
+"""What happens to every request before and after a view."""

@@ -1,0 +1,1 @@
+"""All writes: keyword-only, one transaction each, with their ledger row inside."""

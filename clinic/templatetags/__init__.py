@@ -1,0 +1,1 @@
+"""Template filters and what every page is given."""
