@@ -29,3 +29,9 @@ def signed_in(*, by: User, at: dt.datetime) -> None:
 def signed_out(*, by: User, at: dt.datetime) -> None:
     """Record a sign-out."""
     _note("signed out", by, at)
+
+
+def demo_passwords_renewed(*, at: dt.datetime) -> None:
+    """Record that the demo people got new passwords."""
+    with transaction.atomic():
+        ledger.record(chain=ledger.SYSTEM, action="demo passwords renewed", by=None, at=at)
