@@ -1,6 +1,6 @@
 """Sign-in, in place too; sign-out; the next person at a shared station; the first page."""
 
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from django.contrib.auth import login, logout
 from django.contrib.auth.decorators import login_not_required
@@ -22,11 +22,17 @@ from clinic.models import User
 from clinic.selectors.access import sites_for
 from clinic.services.accounts import signed_in, signed_out
 
+# Generic only for the type checker: the class isn't subscriptable when it runs.
+if TYPE_CHECKING:
+    FormPage = FormView[AuthenticationForm]
+else:
+    FormPage = FormView
+
 
 @method_decorator(
     [login_not_required, sensitive_post_parameters(), csrf_protect, never_cache], name="dispatch"
 )
-class SignIn(FormView[AuthenticationForm]):
+class SignIn(FormPage):
     """Sign in; from a page's script it answers JSON so that a typed sheet stays on screen."""
 
     template_name = "accounts/sign_in.html"
