@@ -1,0 +1,1 @@
+"""Files in and out: the intake of past visits, and the invented demo clinic."""
