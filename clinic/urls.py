@@ -1,11 +1,11 @@
 """All addresses: one list of routes a view module, the site's slug in front."""
 
-from django.urls import include, path
+from django.urls import URLPattern, URLResolver, include, path
 
 from clinic.views import accounts
 
 # Each module of a site's screens is named here once, in the order of the navigation.
-SITE_ROUTES: list[object] = []
+SITE_ROUTES: list[URLPattern | URLResolver] = []
 
 urlpatterns = [
     *accounts.routes,

@@ -14,8 +14,11 @@ def is_background(request: HttpRequest) -> bool:
 class SignInMiddleware(LoginRequiredMiddleware):
     """Django's own, but a script of a page gets JSON so that the typed sheet stays on screen."""
 
-    def handle_no_permission(self, request: HttpRequest, view_func: Any) -> HttpResponseBase:
+    def process_view(
+        self, request: HttpRequest, view_func: Any, view_args: Any, view_kwargs: Any
+    ) -> HttpResponseBase | None:
         """Answer 401 to a script, redirect a page to the sign-in."""
-        if is_background(request):
+        answer = super().process_view(request, view_func, view_args, view_kwargs)
+        if answer is not None and is_background(request):
             return JsonResponse({"signed_out": True}, status=401)
-        return super().handle_no_permission(request, view_func)
+        return answer
