@@ -25,6 +25,8 @@ import numpy as np
 
 from clinic.exchange.demo.numbers import numbers
 
+THINNEST_UM = 160.0
+
 
 @dataclass
 class InventedEye:
@@ -69,7 +71,7 @@ class InventedEye:
         table = numbers()["scanner"]
         offset = table[oct_class]["dry_mean_um"] - table["SD-BM"]["dry_mean_um"]
         noise = rng.normal(0.0, numbers()["noise"]["cst_um"])
-        return round(max(160.0, self.dry_um + offset + self.fluid_um + noise))
+        return int(round(max(THINNEST_UM, self.dry_um + offset + self.fluid_um + noise)))
 
     def read_letters(self, rng: np.random.Generator) -> int:
         """Return one letter score, 0 to 100."""
