@@ -1,0 +1,163 @@
+"""One eye of the trend report: facts, chart, raised with working, visits, decisions, the rest."""
+
+from clinic.chart.spoken import spoken
+from clinic.reports.chart_drawing import ChartDrawing
+from clinic.reports.content import Dated, EyeReport, VisitRow
+from clinic.reports.paper import QUIET
+from clinic.reports.sheet import Sheet
+from clinic.reports.table import Column, Row, table
+from clinic.reports.words import day_words, joined, rules
+from clinic.reports.working import missing, verdict
+
+VISITS = (
+    Column("Visit", 1.2),
+    Column("CST, scanner", 1.35),
+    Column("Fluid", 1.0),
+    Column("Acuity", 1.35),
+    Column("IOP", 1.1),
+    Column("Treated", 1.4),
+    Column("Regimen's reading", 1.5),
+    Column("Decided", 1.15),
+    Column("Next due", 1.05),
+)
+
+
+ROOM_FOR_AN_EYE = 480.0
+
+
+def eye_section(sheet: Sheet, eye: EyeReport, first: bool, gutter: float = 0.0) -> None:
+    """Write everything of one eye; the second eye begins on a new page unless much is left."""
+    if not first and sheet.left_over < ROOM_FOR_AN_EYE:
+        sheet.turn()
+    sheet.heading(2, eye.side_words, keep=120)
+    _facts(sheet, eye)
+    _chart(sheet, eye, gutter)
+    _raised(sheet, eye)
+    _could_not_tell(sheet, eye)
+    _visits(sheet, eye)
+    _decisions(sheet, eye)
+    _answers(sheet, eye)
+    _dated(sheet, "Treatment courses", eye.courses)
+    _dated(sheet, "Eye events", eye.events)
+    _dated(sheet, "Contacts", eye.contacts)
+    _context(sheet, eye)
+
+
+def _facts(sheet: Sheet, eye: EyeReport) -> None:
+    """Write cause, status, regimen and what the regimen reads."""
+    sheet.pair("Cause, status", [joined((eye.cause, eye.status))])
+    sheet.pair("Regimen", [joined((eye.regimen, eye.place)) or "no regimen chosen"])
+    if eye.reading:
+        on = f" (visit of {day_words(eye.reading_from)})" if eye.reading_from else ""
+        sheet.pair("Its reading", [eye.reading + on])
+    sheet.pair("History", [eye.history])
+
+
+def _chart(sheet: Sheet, eye: EyeReport, gutter: float) -> None:
+    drawing = ChartDrawing(eye.chart, sheet.paper.left, sheet.paper.room, gutter)
+    sheet.gap(6)
+    sheet.figure(drawing.height, drawing.draw, spoken(eye.chart))
+    for note in eye.chart_notes:
+        sheet.text(note, size=6.6, tone=QUIET)
+
+
+def _raised(sheet: Sheet, eye: EyeReport) -> None:
+    """Write what is raised and what still stands, each with its working."""
+    sheet.heading(3, "Raised, with working")
+    if not eye.raised:
+        sheet.text("Nothing is raised. That is no promise: see the rules that couldn't tell.")
+    for one in eye.raised:
+        verdict(sheet, one)
+    if eye.still:
+        sheet.heading(3, "Still")
+        for one in eye.still:
+            verdict(sheet, one)
+
+
+def _could_not_tell(sheet: Sheet, eye: EyeReport) -> None:
+    sheet.heading(3, "Couldn't tell")
+    if not eye.could_not_tell:
+        sheet.text("No rule was short of a value.")
+    for one in eye.could_not_tell:
+        missing(sheet, one)
+    names = "; ".join(eye.limits_not_reached)
+    sheet.heading(3, "Limits not reached", keep=12)
+    sheet.text(
+        f"{rules(len(eye.limits_not_reached)).capitalize()}; "
+        f"{len(eye.could_not_tell)} couldn't tell." + (f" Not reached: {names}." if names else ""),
+        size=7.6,
+    )
+
+
+def _visits(sheet: Sheet, eye: EyeReport) -> None:
+    """Write the visits, newest first, with corrections beside them."""
+    sheet.heading(3, f"Visits ({len(eye.visits)}), newest first", keep=60)
+    if not eye.visits:
+        sheet.text("No visit of this eye is recorded.")
+    newest_first = sorted(eye.visits, key=lambda row: row.day, reverse=True)
+    table(sheet, VISITS, [visit_row(row) for row in newest_first])
+
+
+def visit_row(row: VisitRow) -> Row:
+    """Return a visit as a table row, its notes and corrections in a line under it."""
+    cells = (
+        joined((day_words(row.day), row.kind), "\n"),
+        joined((row.cst, row.scanner), "\n"),
+        row.fluid,
+        joined((row.letters, row.acuity), "\n"),
+        row.iop,
+        row.treated,
+        row.reading,
+        row.decided,
+        row.due,
+    )
+    return Row(cells, joined((row.symptoms, row.note, *row.changes)))
+
+
+def _decisions(sheet: Sheet, eye: EyeReport) -> None:
+    if not eye.decisions:
+        return
+    sheet.heading(3, "Decisions", keep=50)
+    columns = (Column("Visit", 1), Column("Decided", 2), Column("Because", 3), Column("By", 1.4))
+    table(
+        sheet,
+        columns,
+        [Row((day_words(row.day), row.choice, row.because, row.by)) for row in eye.decisions],
+    )
+
+
+def _answers(sheet: Sheet, eye: EyeReport) -> None:
+    """Write how raised things were answered; the open ones say so."""
+    if not eye.answers:
+        return
+    sheet.heading(3, "Answers", keep=50)
+    columns = (
+        Column("Visit", 1),
+        Column("Raised", 2.4),
+        Column("Rank", 1),
+        Column("Answer", 1.6),
+        Column("Because", 2),
+        Column("By", 1.4),
+    )
+    rows = [
+        Row((day_words(row.day), row.title, row.rank, row.answer or "open", row.because, row.by))
+        for row in eye.answers
+    ]
+    table(sheet, columns, rows)
+
+
+def _dated(sheet: Sheet, title: str, lines: tuple[Dated, ...]) -> None:
+    if not lines:
+        return
+    sheet.heading(3, title, keep=14)
+    for line in lines:
+        sheet.pair(day_words(line.day) or "undated", [joined((line.what, line.note))])
+
+
+def _context(sheet: Sheet, eye: EyeReport) -> None:
+    """Write the context numbers apart."""
+    if not eye.context:
+        return
+    sheet.heading(3, "Context, not used by any rule", keep=30)
+    for row in eye.context:
+        sheet.pair(row.what, [joined((row.amount, row.note))])
