@@ -1,0 +1,95 @@
+"""The change of thickness since the last comparable scan, shared by the rules that read it."""
+
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+
+from trends import words
+from trends.comparisons import Comparisons
+from trends.limits import Table
+from trends.ruling import bit
+from trends.visits import MISSING, Bools, Ints, Visits
+
+CLASSES = (*words.OCT_CLASSES, "assumed")
+
+
+def by_class(limits: Table, prefix: str, classes: Ints, absent: int) -> Ints:
+    """Return a limit for each class code (n,); ``absent`` where the set leaves a class open."""
+    table = [limits.get(f"{prefix}_{name}") for name in CLASSES]
+    numbers = np.array([absent if one is None else one for one in table] + [absent])
+    return numbers[classes]
+
+
+@dataclass(frozen=True)
+class Rise:
+    """The rise of every scan against its comparable one; columns (n,)."""
+
+    v: Visits
+    c: Comparisons
+    limits: Table
+
+    @cached_property
+    def classes(self) -> Ints:
+        """Class codes: the four classes, then "assumed"; -1 where nothing can be said."""
+        assumed = CLASSES.index("assumed") if self.v.one_scanner_assumed else -1
+        return np.where(self.v.oct_class < 0, assumed, self.v.oct_class)
+
+    @cached_property
+    def permille(self) -> Ints:
+        """Percentage limit in per mille; MISSING where the set leaves the class open."""
+        return by_class(self.limits, "permille", self.classes, MISSING)
+
+    @cached_property
+    def um(self) -> Ints:
+        """The µm that must be exceeded, -1 where only the percentage counts."""
+        return by_class(self.limits, "um", self.classes, -1)
+
+    @cached_property
+    def before(self) -> Ints:
+        """The reference thickness; MISSING where there is none."""
+        return np.where(self.c.cst.found, self.v.cst_um[self.c.cst.ref], MISSING)
+
+    @cached_property
+    def change(self) -> Ints:
+        """µm since the reference; 0 where it can't be told."""
+        both = self.c.cst_given & self.c.cst.found
+        return np.where(both, self.v.cst_um - self.before, 0)
+
+    @cached_property
+    def applies(self) -> Bools:
+        """Followed eyes, at kinds where a scan is expected or where one was made."""
+        return self.c.followed & (self.c.cst_given | self.c.measured_kind)
+
+    @cached_property
+    def judgeable(self) -> Bools:
+        """Measured, with a known class that has a limit and something to compare with."""
+        has_limit = (self.classes >= 0) & (self.permille != MISSING)
+        return self.c.cst_given & has_limit & self.c.cst.found
+
+    @cached_property
+    def percent_met(self) -> Bools:
+        """At or above the percentage, in whole numbers so that exactly 10 % counts."""
+        reached = (
+            1000 * self.change.astype(np.int64) >= self.permille.astype(np.int64) * self.before
+        )
+        return self.judgeable & reached
+
+    @cached_property
+    def certain(self) -> Bools:
+        """Beyond the percentage and, where the class has one, beyond the µm repeatability."""
+        return self.percent_met & ((self.um < 0) | (self.change > self.um))
+
+    def missing(self, poor: Bools) -> Ints:
+        """Return the missing bits of rows that could not be told."""
+        out = np.where(~self.c.cst_given, bit("cst_um"), 0)
+        given = self.c.cst_given
+        no_class = given & ((self.classes < 0) | (self.permille == MISSING))
+        not_comparable = given & self.c.cst.not_comparable
+        out |= np.where(no_class | not_comparable, bit("oct_class"), 0)
+        return out | np.where(poor & given, bit("scan_quality"), 0)
+
+
+def rise(v: Visits, c: Comparisons, limits: Table) -> Rise:
+    """Return the rise of every scan."""
+    return Rise(v, c, limits)

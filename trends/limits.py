@@ -1,0 +1,175 @@
+"""Limit sets: named, versioned thresholds, each with unit, source and place in the source."""
+
+import hashlib
+import tomllib
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass
+from functools import cache
+from importlib import resources
+from typing import Any
+
+from trends.citations import citation
+from trends.errors import LimitSetRefused
+
+Value = int | str | bool
+
+
+@dataclass(frozen=True)
+class Entry:
+    """One threshold: its value, unit, citation key and place; ``memory`` = not yet checked."""
+
+    value: Value
+    unit: str
+    cite: str
+    place: str = ""
+    from_day: str = ""
+    memory: bool = False
+    note: str = ""
+
+
+@dataclass(frozen=True)
+class Table:
+    """The entries of one rule or regimen; ``floor_only``: nothing adopted, only the floor runs."""
+
+    name: str
+    entries: Mapping[str, Entry]
+    floor_only: bool = False
+
+    def __getitem__(self, name: str) -> Value:
+        return self.entries[name].value
+
+    def __contains__(self, name: object) -> bool:
+        return name in self.entries
+
+    def number(self, name: str) -> int:
+        """Return a whole number; raises ``LimitSetRefused`` for anything else."""
+        value = self.entries[name].value if name in self.entries else None
+        if isinstance(value, bool) or not isinstance(value, int):
+            raise _refused(f"{self.name}.{name}", value, "a whole number")
+        return value
+
+    def get(self, name: str) -> int | None:
+        """Return a whole number, or None where the set leaves it open (a site choice)."""
+        return self.number(name) if name in self.entries else None
+
+
+@dataclass(frozen=True)
+class LimitSet:
+    """A whole set. A rule that isn't in it is off and says so (floor rules excepted)."""
+
+    name: str
+    version: str
+    title: str
+    causes: tuple[str, ...]
+    rules: Mapping[str, Table]
+    regimens: Mapping[str, Table]
+    text: str
+
+    @property
+    def digest(self) -> str:
+        """SHA-256 of the canonical text."""
+        return hashlib.sha256(self.text.encode()).hexdigest()
+
+    def rule(self, name: str) -> Table | None:
+        """Return a rule's entries, or None when the rule is off."""
+        return self.rules.get(name)
+
+    def regimen(self, name: str) -> Table | None:
+        """Return a regimen's defaults, or None."""
+        return self.regimens.get(name)
+
+    def entries(self) -> Iterator[tuple[str, str, Entry]]:
+        """Yield (table, entry name, entry) of every threshold, in the order of the text."""
+        for table in (*self.rules.values(), *self.regimens.values()):
+            for name, entry in table.entries.items():
+                yield table.name, name, entry
+
+    @classmethod
+    def from_toml(cls, text: str) -> "LimitSet":
+        """Read and validate a set; raises ``LimitSetRefused`` with what, value, allowed, why."""
+        text = text.replace("\r\n", "\n").strip() + "\n"
+        try:
+            data = tomllib.loads(text)
+        except tomllib.TOMLDecodeError as error:
+            raise _refused("limit set", str(error), "TOML text") from error
+        for needed in ("name", "version", "title", "causes"):
+            if needed not in data:
+                raise _refused(needed, None, "present")
+        return cls(
+            name=str(data["name"]),
+            version=str(data["version"]),
+            title=str(data["title"]),
+            causes=tuple(data["causes"]),
+            rules=_tables(data.get("rules", {})),
+            regimens=_tables(data.get("regimens", {})),
+            text=text,
+        )
+
+
+def _refused(what: str, value: Any, allowed: str) -> LimitSetRefused:
+    return LimitSetRefused(
+        f"limit set, {what}",
+        value,
+        allowed,
+        "A threshold without a clear value and source can't be shown or trusted.",
+        "Correct the text; nothing was adopted.",
+    )
+
+
+def _tables(data: Mapping[str, Any]) -> dict[str, Table]:
+    return {name: Table(name, dict(_entries(name, body))) for name, body in data.items()}
+
+
+def _entries(table: str, body: Mapping[str, Any]) -> Iterator[tuple[str, Entry]]:
+    for name, raw in body.items():
+        if not isinstance(raw, dict) or "value" not in raw or "cite" not in raw:
+            raise _refused(f"{table}.{name}", raw, "a table with value, unit and cite")
+        if not isinstance(raw["value"], int | str | bool):
+            raise _refused(f"{table}.{name}", raw["value"], "a whole number, a word, true or false")
+        try:
+            citation(raw["cite"])
+        except KeyError as error:
+            raise _refused(f"{table}.{name}.cite", raw["cite"], "a key of the citations") from error
+        yield (
+            name,
+            Entry(
+                value=raw["value"],
+                unit=str(raw.get("unit", "")),
+                cite=raw["cite"],
+                place=str(raw.get("table", "")),
+                from_day=str(raw.get("from_day", "")),
+                memory=bool(raw.get("memory", False)),
+                note=str(raw.get("note", "")),
+            ),
+        )
+
+
+def shipped_names() -> list[str]:
+    """Return the names of the shipped sets."""
+    folder = resources.files("trends") / "limit_sets"
+    return sorted(f.name.removesuffix(".toml") for f in folder.iterdir() if f.name[-5:] == ".toml")
+
+
+@cache
+def shipped(name: str) -> LimitSet:
+    """Return a shipped set by name; raises ``LimitSetRefused`` for an unknown one."""
+    if name not in shipped_names():
+        raise _refused("name", name, ", ".join(shipped_names()))
+    file = resources.files("trends") / "limit_sets" / f"{name}.toml"
+    return LimitSet.from_toml(file.read_text(encoding="utf-8"))
+
+
+@cache
+def floor() -> LimitSet:
+    """Return the floor: alarms and levels that run always and can't be switched off."""
+    file = resources.files("trends") / "floor.toml"
+    return LimitSet.from_toml(file.read_text(encoding="utf-8"))
+
+
+def table_for(limits: LimitSet | None, rule: str, *, is_floor: bool) -> Table | None:
+    """Return the entries a rule runs with, or None when it is off."""
+    table = limits.rule(rule) if limits is not None else None
+    if table is not None or not is_floor:
+        return table
+    fallback = floor().rules[rule]
+    return Table(rule, fallback.entries, floor_only=True)

@@ -1,0 +1,13 @@
+"""Every rule in the order of the output, found by its id."""
+
+from types import ModuleType
+
+from trends.rules import thickening
+
+VISIT_RULES: tuple[ModuleType, ...] = (thickening,)
+STANDING_RULES: tuple[ModuleType, ...] = ()
+
+
+def by_id() -> dict[str, ModuleType]:
+    """Return every rule module by its id, in output order."""
+    return {rule.INFO.id: rule for rule in (*VISIT_RULES, *STANDING_RULES)}

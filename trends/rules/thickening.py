@@ -1,0 +1,45 @@
+"""Is the retina thicker than at the last comparable scan, beyond what two scans differ by chance?
+
+Raised when CST is at least the class's percentage above the last comparable scan and, where the
+class has a published repeatability in µm, by more than that too. Source: repeatability of the class
+(limit set). Population: diabetic macular edema, measured eyes. It would rather miss a small rise
+than raise on noise; ``thickening_possible`` shows the grey zone. Left out on purpose: a change
+across two scanner classes, which is never called a change.
+
+Raised: 400 to 440 µm on SD-RPE (+10.0 %, +40 µm). Not: 400 to 439 (+9.75 %).
+"""
+
+import numpy as np
+
+from trends import fluid
+from trends.comparisons import Comparisons
+from trends.limits import Table
+from trends.ruling import Description, Judged, RuleInfo
+from trends.verdict import RANKS, verdict
+from trends.visits import Visits
+
+INFO = RuleInfo(
+    id="thickening",
+    version=1,
+    title="Thicker than the last comparable scan",
+    needs=("cst_um", "oct_class"),
+    cites=("nct00442156", "crr-2019", "krzystolik-2007"),
+    leans="would rather miss a small rise than raise on noise",
+    parts=("thickening",),
+)
+
+
+def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
+    """Judge all visits at once; see ``fluid.rise`` for the arithmetic."""
+    rise = fluid.rise(v, c, limits)
+    poor_and_not_raised = c.poor & ~rise.certain
+    known = rise.judgeable & ~poor_and_not_raised
+    outcome = verdict(known=known, applies=rise.applies, raised=rise.certain)
+    rank = np.where(outcome == 1, RANKS[str(limits["rank"])], 0).astype(np.int32)
+    missing = np.where(known, 0, rise.missing(poor_and_not_raised))
+    return Judged(outcome, rank, c.cst.ref, np.where(outcome == 1, 0, -1), missing)
+
+
+def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
+    """Put one row into words."""
+    return fluid.describe_change(v, judged, row, limits)

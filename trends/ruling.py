@@ -1,0 +1,143 @@
+"""The shape of a rule: what it says of itself, and what it returns.
+
+A rule file holds ``INFO`` (a ``RuleInfo``), ``judge(v, limits, c, today) -> Judged`` over all visits
+at once, and ``describe(v, judged, row, limits) -> Description`` for one chosen row.
+"""
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+
+from trends.verdict import NO_RANK, Outcomes, verdict
+from trends.visits import Bools, Ints
+
+# Columns a rule can miss, one bit each, named as in the tidy file.
+MISSABLE = (
+    "cst_um",
+    "oct_class",
+    "scan_quality",
+    "irf",
+    "srf",
+    "acuity",
+    "acuity_chart",
+    "acuity_correction",
+    "iop_mmhg",
+    "iop_method",
+    "iop_after_mmhg",
+    "agent",
+    "sex",
+    "cause",
+    "due_date",
+    "symptoms",
+    "scanner",
+    "kind",
+    "status",
+    "date",
+    "laser",
+    "regimen",
+)
+
+
+def bit(column: str) -> int:
+    """Return the bit of a column that may be missing."""
+    return 1 << MISSABLE.index(column)
+
+
+def columns_of(bits: int) -> tuple[str, ...]:
+    """Return the columns of some bits, in the order of the list."""
+    return tuple(name for place, name in enumerate(MISSABLE) if int(bits) >> place & 1)
+
+
+@dataclass(frozen=True)
+class RuleInfo:
+    """What a rule says of itself. ``parts`` names its parts in the order of their numbers."""
+
+    id: str
+    version: int
+    title: str
+    needs: tuple[str, ...]
+    cites: tuple[str, ...]
+    leans: str
+    shape: str = "visit"
+    floor: bool = False
+    parts: tuple[str, ...] = ("",)
+    omits: str = ""
+
+
+@dataclass(frozen=True)
+class Judged:
+    """A rule over all visits: one entry a row; ``part`` is the number of the part that counts."""
+
+    outcome: Outcomes
+    rank: Ints
+    ref: Ints
+    part: Ints
+    missing: Ints
+    since: Ints | None = None
+    extra: dict[str, Any] = field(default_factory=dict)
+
+
+@dataclass(frozen=True)
+class Description:
+    """One row in words, for the nine parts a shown verdict has."""
+
+    sentence: str
+    values: list[dict[str, Any]] = field(default_factory=list)
+    arithmetic: list[str] = field(default_factory=list)
+    limit: str = ""
+    noise: str = ""
+    unknowns: list[str] = field(default_factory=list)
+    options: list[str] = field(default_factory=list)
+    not_for: list[str] = field(default_factory=list)
+    emergency: bool = False
+    reference_value: int | str | None = None
+
+
+@dataclass(frozen=True)
+class Part:
+    """One part of an OR-rule: masks and columns (n,); ``rank`` counts where it is met."""
+
+    applies: Bools
+    known: Bools
+    met: Bools
+    rank: int
+    ref: Ints | None = None
+    missing: Ints | int = 0
+
+
+def any_of(parts: Sequence[Part], applies: Bools, blank: Ints | int = 0) -> Judged:
+    """Join parts by OR: raised if any is; couldn't tell only if none is and one is missing.
+
+    ``blank`` are the missing bits where no part applies at all ("no earlier value").
+    """
+    size = applies.size
+    rank = np.full(size, NO_RANK, dtype=np.int32)
+    part = np.full(size, -1, dtype=np.int32)
+    ref = np.full(size, -1, dtype=np.int64)
+    missing = np.zeros(size, dtype=np.int64)
+    judged_any, unknown_any = np.zeros(size, dtype=bool), np.zeros(size, dtype=bool)
+    for number, one in enumerate(parts):
+        met = one.applies & one.known & one.met
+        higher = met & (one.rank > rank)
+        rank = np.where(higher, one.rank, rank)
+        part = np.where(higher, number, part)
+        here = one.ref if one.ref is not None else np.full(size, -1)
+        first = one.applies & one.known & (part < 0) & (ref < 0)
+        ref = np.where(higher | first, here, ref)
+        lacking = one.applies & ~one.known
+        missing = np.where(lacking, missing | np.asarray(one.missing), missing)
+        unknown_any |= lacking
+        judged_any |= one.applies
+    raised = part >= 0
+    missing = np.where(raised, 0, np.where(judged_any, missing, np.asarray(blank)))
+    known = raised | (judged_any & ~unknown_any)
+    outcome = verdict(known=known, applies=applies, raised=raised)
+    return Judged(
+        outcome=outcome,
+        rank=np.where(applies, rank, NO_RANK).astype(np.int32),
+        ref=np.where(applies, ref, -1),
+        part=np.where(applies, part, -1),
+        missing=np.where(applies, missing, 0),
+    )
