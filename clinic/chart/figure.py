@@ -1,11 +1,11 @@
 """The chart as a plotly figure: a plain dictionary of JSON values, made without plotly itself."""
 
-from clinic.chart.geometry import Lane, Panel, Panels
+from clinic.chart.geometry import Lane, LimitLine, Panel, Panels
 from clinic.chart.styles import BAND, GRID, INK, QUIET
 from clinic.chart.traces import Json, lane_trace, limit_trace, line_trace, plain
 
 PANEL_GAP = 0.035
-LANE_PX = 22
+LANE_PX = 27
 PANEL_PX = 170
 TICK_FORMATS = [
     {"dtickrange": [None, "M1"], "value": "%-d %b %Y"},
@@ -21,7 +21,7 @@ def figure(chart: Panels) -> Json:
     strip_share = strip / (PANEL_PX * len(chart.panels) + strip)
     layout: Json = {
         "height": height,
-        "margin": {"l": 70, "r": 16, "t": 12, "b": 40},
+        "margin": {"l": 70, "r": 30, "t": 12, "b": 40},
         "font": {"family": "inherit", "size": 13, "color": INK},
         "paper_bgcolor": "rgba(0,0,0,0)",
         "plot_bgcolor": "rgba(0,0,0,0)",
@@ -104,6 +104,7 @@ def _add_panel(layout: Json, data: list[Json], panel: Panel, axis: str, at: list
     if panel.empty:
         layout["annotations"].append(_words("no readings", axis, sum(at) / 2))
     data += [limit_trace(line, axis, panel.unit) for line in panel.limits]
+    layout["annotations"] += [_limit_words(line, axis, panel.unit) for line in panel.limits]
     data += [line_trace(series, axis, panel) for series in panel.series]
 
 
@@ -124,6 +125,21 @@ def _band(panel: Panel, axis: str) -> Json:
     }
 
 
+def _limit_words(line: LimitLine, axis: str, unit: str) -> Json:
+    """Return the short name of a limit at the right end of its line."""
+    return {
+        "text": f"limit {line.at:g} {unit}",
+        "xref": "x",
+        "yref": axis,
+        "x": line.last.isoformat(),
+        "y": line.at,
+        "xanchor": "right",
+        "yanchor": "bottom",
+        "showarrow": False,
+        "font": {"size": 11, "color": QUIET},
+    }
+
+
 def _words(text: str, axis: str, height: float) -> Json:
     return {
         "text": text,
@@ -141,6 +157,7 @@ def _add_lanes(
 ) -> None:
     """Add the rows of treatments and events under the panels."""
     axis = f"y{after + 1}"
+    layout["meta"] = {"lanes": axis}
     layout["yaxis" + axis[1:]] = {
         "domain": [0, max(0.01, round(strip_share - 0.005, 4))],
         "range": [len(lanes) - 0.5, -0.5],

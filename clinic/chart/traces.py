@@ -51,10 +51,9 @@ def line_trace(series: Series, axis: str, panel: Panel) -> Json:
         "line": {"color": style.tone, "width": 2, "dash": _dash(style.dash)},
         "marker": {
             "size": 8,
-            "color": style.tone,
-            "symbol": [
-                style.marker + ("-open" if point and point.hollow else "") for point in points
-            ],
+            "symbol": style.marker,
+            "color": ["#ffffff" if point and point.hollow else style.tone for point in points],
+            "line": {"color": style.tone, "width": 1.6},
         },
         "error_y": {
             "type": "data",

@@ -2,7 +2,7 @@
 
 from dataclasses import replace
 
-from clinic.reports.content import EveningBlock, EveningEye, EveningList
+from clinic.content import EveningBlock, EveningEye, EveningList
 from clinic.reports.document import About, Part, written_pdf
 from clinic.reports.paper import QUIET, RULE, paper_named
 from clinic.reports.sheet import Sheet, artifact, ruled

@@ -1,8 +1,8 @@
 """One eye of the trend report: facts, chart, raised with working, visits, decisions, the rest."""
 
 from clinic.chart.spoken import spoken
+from clinic.content import Dated, EyeReport, VisitRow
 from clinic.reports.chart_drawing import ChartDrawing
-from clinic.reports.content import Dated, EyeReport, VisitRow
 from clinic.reports.paper import QUIET
 from clinic.reports.sheet import Sheet
 from clinic.reports.table import Column, Row, table

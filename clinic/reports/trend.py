@@ -2,8 +2,8 @@
 
 from collections.abc import Sequence
 
+from clinic.content import EyeReport, PatientReport
 from clinic.reports.chart_drawing import gutter_for
-from clinic.reports.content import EyeReport, PatientReport
 from clinic.reports.document import About, Part, written_pdf
 from clinic.reports.eye_section import eye_section
 from clinic.reports.paper import QUIET, Paper, paper_named

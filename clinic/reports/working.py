@@ -1,6 +1,6 @@
 """The nine parts of a verdict's working, written under its sentence."""
 
-from clinic.reports.content import MissingText, ValueUsed, VerdictText
+from clinic.content import MissingText, ValueUsed, VerdictText
 from clinic.reports.paper import INK
 from clinic.reports.sheet import Sheet
 from clinic.reports.words import day_words, joined

@@ -2,9 +2,9 @@
 
 import datetime as dt
 
+from clinic import content as c
 from clinic.chart import EyeGiven, EyeMark, LimitPiece, Reading, panels_for
 from clinic.notice import NOTICE
-from clinic.reports import content as c
 
 START = dt.date(2024, 2, 5)
 PRINTED = dt.datetime(2026, 3, 4, 16, 5)

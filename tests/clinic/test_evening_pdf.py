@@ -7,9 +7,9 @@ import re
 
 from pypdf import PdfReader
 
+from clinic.content import EveningBlock, EveningEye, EveningList
 from clinic.notice import NOTICE
 from clinic.reports import evening
-from clinic.reports.content import EveningBlock, EveningEye, EveningList
 
 EYE = EveningEye(
     "Right eye",

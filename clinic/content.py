@@ -1,4 +1,7 @@
-"""What a print holds: finished words and numbers, frozen. The same content gives the same bytes."""
+"""What an eye course or a print holds: finished words and numbers, frozen; same content, same bytes.
+
+It lies under the selectors that fill it and the reports that print it, and knows neither.
+"""
 
 import datetime as dt
 from dataclasses import dataclass, field
@@ -25,7 +28,8 @@ class VerdictText:
     """Something raised or still standing, with its full working in nine parts.
 
     1 ``sentence``, 2 ``values``, 3 ``arithmetic``, 4 ``rule`` to ``adopted``, 5 ``sources``,
-    6 ``noise``, 7 ``unknowns``, 8 ``options`` (or ``emergency_text``), 9 ``not_for``.
+    6 ``noise``, 7 ``unknowns``, 8 ``options`` (or ``emergency_text``), 9 ``not_for``. ``kind`` and
+    ``from_day`` name the visit an answer is bound to.
     """
 
     rule: str
@@ -46,6 +50,9 @@ class VerdictText:
     emergency_text: str = ""
     not_for: Words = ()
     answer: str = ""
+    kind: str = ""
+    answerable: bool = False
+    may_look_again: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -77,6 +84,7 @@ class VisitRow:
     symptoms: str = ""
     note: str = ""
     changes: Words = ()
+    kind_code: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -145,6 +153,11 @@ class EyeReport:
     events: tuple[Dated, ...] = ()
     contacts: tuple[Dated, ...] = ()
     context: tuple[ContextRow, ...] = ()
+
+    @property
+    def side_slug(self) -> str:
+        """Return the side as addresses spell it."""
+        return "right" if self.side == "R" else "left"
 
 
 @dataclass(frozen=True, slots=True)
