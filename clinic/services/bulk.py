@@ -23,6 +23,7 @@ from clinic.models import (
     History,
     IntakeFile,
     Measured,
+    MoreTreatment,
     NextStep,
     Patient,
     PatientStatus,
@@ -55,6 +56,7 @@ ORDER: tuple[type[models.Model], ...] = (
     Measured,
     Decided,
     Treated,
+    MoreTreatment,
     NextStep,
     ContactEntry,
     Plan,
@@ -237,7 +239,11 @@ def add_parts(built: Built, visit: Visit, eye: Eye, past: PastEyeVisit) -> None:
     for name, model in PARTS:
         values = getattr(past, name)
         if values is not None:
-            built.add(model(visit=visit, eye=eye, rev=1, at=built.at, by=built.by, **values))
+            row = model(visit=visit, eye=eye, rev=1, at=built.at, by=built.by, **values)
+            built.add(row)
+            if isinstance(row, Treated):
+                for more in past.also_given:
+                    built.add(MoreTreatment(treated=row, **more))
 
 
 def digest_of(person: PastPerson) -> dict[str, Any]:
@@ -248,7 +254,10 @@ def digest_of(person: PastPerson) -> dict[str, Any]:
             [
                 visit.day,
                 visit.kind,
-                [[e.side, e.measured, e.decided, e.treated, e.ahead] for e in visit.eyes],
+                [
+                    [e.side, e.measured, e.decided, e.treated, e.ahead, e.also_given]
+                    for e in visit.eyes
+                ],
                 visit.contact,
             ]
             for visit in person.visits

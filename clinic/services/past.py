@@ -17,13 +17,17 @@ Values = Mapping[str, Any]
 
 @dataclass(frozen=True)
 class PastEyeVisit:
-    """One eye at one visit: columns of Measured, Decided, Treated and NextStep."""
+    """One eye at one visit: columns of Measured, Decided, Treated and NextStep.
+
+    ``also_given`` holds the columns of MoreTreatment, one mapping a further treatment.
+    """
 
     side: str
     measured: Values | None = None
     decided: Values | None = None
     treated: Values | None = None
     ahead: Values | None = None
+    also_given: tuple[Values, ...] = ()
 
 
 @dataclass(frozen=True)

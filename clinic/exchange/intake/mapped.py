@@ -15,19 +15,38 @@ from clinic.exchange.intake.source import Source
 
 NUMBERS = {"cst_um", "iop_mmhg", "iop_after_mmhg", "dose_mg", "birth_year"}
 DATES = {"date", "due_date"}
+UNNAMED = "unnamed"
 MOST_DAYS = 36_525
 DECIMAL_PLACES = Decimal("0.1")
 
 
 @dataclass
 class Mapped:
-    """Tidy rows as text. ``columns[name][i]`` came from row ``row_numbers[i]`` of the file."""
+    """Tidy rows as text. ``columns[name][i]`` came from row ``row_numbers[i]`` of the file.
+
+    ``places[i]`` is the place of that row among the source's rows; ``unnamed[i]`` says that a
+    treatment was given whose agent the file doesn't name (the engine's agent stays blank).
+    """
 
     columns: dict[str, list[str]]
     row_numbers: list[int]
+    places: list[int]
     from_header: dict[str, str]
+    unnamed: list[bool]
     refused: list[RefusedCell] = field(default_factory=list)
     not_taken: tuple[str, ...] = ()
+
+    def without(self, numbers: set[int]) -> "Mapped":
+        """Return the rows that are none of these rows of the file."""
+        keep = [i for i, number in enumerate(self.row_numbers) if number not in numbers]
+        return Mapped(
+            {name: [cells[i] for i in keep] for name, cells in self.columns.items()},
+            [self.row_numbers[i] for i in keep],
+            [self.places[i] for i in keep],
+            self.from_header,
+            [self.unnamed[i] for i in keep],
+            not_taken=self.not_taken,
+        )
 
 
 class CellProblem(Exception):
@@ -144,13 +163,16 @@ def mapped(source: Source, mapping: Mapping, day_zero: dt.date | None) -> Mapped
     refuse_headers(source, mapping)
     zero = zero_date(mapping, day_zero)
     count = len(source.cells)
-    out = Mapped({}, source.row_numbers, dict(mapping.columns))
+    out = Mapped({}, source.row_numbers, list(range(count)), dict(mapping.columns), [False] * count)
     taken = set(mapping.columns.values())
     out.not_taken = tuple(header for header in source.headers if header not in taken)
     for name, header in mapping.columns.items():
         out.columns[name] = column(out, name, source.column(header), reader(mapping, name, zero))
     for name, value in mapping.constants.items():
         out.columns[name] = [value] * count
+    if UNNAMED in out.columns.get("agent", ()):
+        out.unnamed = [agent == UNNAMED for agent in out.columns["agent"]]
+        out.columns["agent"] = ["" if agent == UNNAMED else agent for agent in out.columns["agent"]]
     return out
 
 

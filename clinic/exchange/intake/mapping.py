@@ -28,7 +28,7 @@ The mapping is a TOML file:
   L = ["OS"]
 
   [words.agent]        "" on the left makes a value blank; blank cells stay blank unless listed
-  aflibercept = ["1"]
+  aflibercept = ["1"]          "unnamed" on the left: something was given, the file doesn't say what
   none = ["0"]
 
   [constants]          one value for every row

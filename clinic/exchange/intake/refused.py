@@ -3,6 +3,8 @@
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+from trends.errors import EbblineError
+
 
 @dataclass(frozen=True)
 class RefusedCell:
@@ -20,18 +22,11 @@ class RefusedCell:
         return f"{where}: {self.value!r} refused. Allowed: {self.allowed}. {self.reason}"
 
 
-class IntakeRefused(Exception):
-    """The file, the mapping or the key file can't be used; nothing was stored.
-
-    ``what`` was wrong, its ``value``, what is ``allowed``, ``why``, and what ``todo``.
-    """
-
-    def __init__(self, what: str, value: object, allowed: str, why: str, todo: str) -> None:
-        self.what, self.value, self.allowed, self.why, self.todo = what, value, allowed, why, todo
-        super().__init__(f"{what}: {value}. Allowed: {allowed}. {why} {todo}")
+class IntakeRefused(EbblineError):
+    """The file, the mapping or the key file can't be used; nothing was stored."""
 
 
-class CellsRefused(Exception):
+class CellsRefused(ValueError):
     """Some cells can't be taken in, so nothing was stored; all of them are listed."""
 
     def __init__(self, cells: Sequence[RefusedCell]) -> None:
