@@ -42,7 +42,7 @@ class Courses:
 
     @classmethod
     def from_marks(cls, rows: Ints, opens: Bools) -> "Courses":
-        """Build from the rows and, for each, whether a course opens there (the first always does)."""
+        """Build from the rows and whether a course opens at each (at the first one always)."""
         at = np.arange(rows.size)
         marks = opens.copy()
         marks[:1] = True
@@ -56,7 +56,7 @@ class Courses:
     @cached_property
     def opens(self) -> Bools:
         """Whether a course starts at the position."""
-        return self.start == self.at
+        return np.asarray(self.start == self.at)
 
     def last_upto(self, flag: Bools) -> Ints:
         """Latest position in the course, at or before each, where ``flag`` holds; else NONE."""
@@ -71,6 +71,6 @@ class Courses:
 
     def count_before(self, flag: Bools) -> Ints:
         """How many earlier positions of the course hold ``flag``."""
-        before = np.cumsum(flag) - flag
+        before: Ints = np.cumsum(flag) - flag
         counted: Ints = before - before[self.start]
         return counted

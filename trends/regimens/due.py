@@ -63,9 +63,11 @@ class DueJudged:
     @cached_property
     def due(self) -> Bools:
         """Whether the visit is within the window before the due day, or later."""
-        return self.day >= self.due_day - self.params.window_days
+        due: Bools = self.day >= self.due_day - self.params.window_days
+        return due
 
     @cached_property
     def date_known(self) -> Bools:
         """Whether the day of the last injection is known."""
-        return self.last_day != NO_DAY
+        known: Bools = self.last_day != NO_DAY
+        return known

@@ -44,9 +44,9 @@ class Extending:
 class Treated:
     """What was given and planned at each position.
 
-    ``injected`` and ``not_recorded`` exclude each other; ``due_day`` is the day set at the visit for
-    the next one, valid where ``due_set``. ``only_shortens``: a visit of a kind that never extends.
-    ``irf`` and ``srf`` have one more entry, for "no such visit".
+    ``injected`` and ``not_recorded`` exclude each other; ``due_day`` is the day set at the visit
+    for the next one, valid where ``due_set``. ``only_shortens``: a kind of visit that never
+    extends. ``irf`` and ``srf`` have one more entry, for "no such visit".
     """
 
     day: Ints
@@ -122,12 +122,14 @@ class Judged:
     @cached_property
     def late(self) -> Bools:
         """More than the allowed days after the due day."""
-        return self.days_off_plan > self.params.late_days
+        late: Bools = self.days_off_plan > self.params.late_days
+        return late
 
     @cached_property
     def early(self) -> Bools:
         """More than the allowed days before the due day."""
-        return self.days_off_plan < -self.params.late_days
+        early: Bools = self.days_off_plan < -self.params.late_days
+        return early
 
     @cached_property
     def worse_parts(self) -> dict[str, Truth]:
@@ -199,12 +201,14 @@ class Judged:
     @cached_property
     def shorter_weeks(self) -> Ints:
         """The plan less one step, never below the least."""
-        return np.maximum(self.planned_weeks - self.params.step_weeks, self.params.least_weeks)
+        shorter: Ints = self.planned_weeks - self.params.step_weeks
+        return np.maximum(shorter, self.params.least_weeks)
 
     @cached_property
     def longer_weeks(self) -> Ints:
         """The plan and one step, never above the most."""
-        return np.minimum(self.planned_weeks + self.params.step_weeks, self.params.most_weeks)
+        longer: Ints = self.planned_weeks + self.params.step_weeks
+        return np.minimum(longer, self.params.most_weeks)
 
     @cached_property
     def extend(self) -> Truth:
@@ -216,4 +220,4 @@ class Judged:
     def decided(self) -> Bools:
         """Whether the plan is known and the comparison answers."""
         known: Bools = (self.plan_set_at != NONE) & (self.worse != UNKNOWN)
-        return known & ((self.worse == YES) | (self.extend != UNKNOWN))
+        return np.asarray(known & ((self.worse == YES) | (self.extend != UNKNOWN)))

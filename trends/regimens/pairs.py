@@ -6,11 +6,13 @@ scan can show a change but never the absence of one, and is never a reference.
 """
 
 from dataclasses import dataclass, fields
+from typing import Any
 
 import numpy as np
 
 from trends.regimens.courses import Bools, Ints
-from trends.regimens.truth import NO, UNKNOWN, YES, Truth, answer, both, either
+from trends.regimens.truth import UNKNOWN, Truth, answer, either
+from trends.ruling import bit
 
 NOT_RECORDED = 0
 """In the key columns: nothing that could be compared."""
@@ -55,12 +57,12 @@ class Change:
     cst_permille: Ints
 
     def at(self, positions: Ints) -> "Change":
-        """The limits at the given positions (limits that hold everywhere stay single numbers)."""
+        """Return the limits at the positions; limits that hold everywhere stay single numbers."""
         return Change(pick(self.letters, positions), pick(self.cst_permille, positions))
 
 
-def pick(values: Ints, positions: Ints) -> Ints:
-    """Values at the positions; a single number holds everywhere."""
+def pick(values: Any, positions: Ints) -> Any:
+    """Return values at the positions; a single number holds everywhere."""
     return values[positions] if values.ndim else values
 
 
@@ -119,37 +121,50 @@ def worse(r: Readings, limit: Change, reference: Ints, now: Ints) -> Truth:
     return either(thicker(r, limit, reference, now), fewer_letters(r, limit, reference, now))
 
 
-def changed(r: Readings, limit: Change, reference: Ints, now: Ints) -> Truth:
-    """Worse or better: one comparison of sizes serves both ways."""
+def changed_cst(r: Readings, limit: Change, reference: Ints, now: Ints) -> Truth:
+    """Whether CST rose or fell by the limit; a poor scan now can't answer no."""
     from_um = r.cst_um[reference]
-    step_um = np.abs(r.cst_um[now] - from_um) * 1000 >= limit.cst_permille * from_um
-    step_letters = np.abs(r.letters[now] - r.letters[reference]) >= limit.letters
-    return either(
-        answer(cst_comparable(r, reference, now) & (step_um | ~r.poor[now]), step_um),
-        answer(letters_comparable(r, reference, now), step_letters),
+    beyond = np.abs(r.cst_um[now] - from_um) * 1000 >= limit.cst_permille * from_um
+    return answer(cst_comparable(r, reference, now) & (beyond | ~r.poor[now]), beyond)
+
+
+def changed_letters(r: Readings, limit: Change, reference: Ints, now: Ints) -> Truth:
+    """Whether letters rose or fell by the limit."""
+    beyond = np.abs(r.letters[now] - r.letters[reference]) >= limit.letters
+    return answer(letters_comparable(r, reference, now), beyond)
+
+
+def changed(r: Readings, limit: Change, reference: Ints, now: Ints) -> Truth:
+    """Worse or better, by either measure."""
+    return either(changed_cst(r, limit, reference, now), changed_letters(r, limit, reference, now))
+
+
+def cst_lacks(r: Readings, told: Truth, reference: Ints, now: Ints) -> Ints:
+    """Bits of the columns that keep a comparison of scans from an answer; 0 where it has one."""
+    recorded = r.has_cst[reference] & r.has_cst[now]
+    key = r.cst_key[reference]
+    comparable = (key != NOT_RECORDED) & (key == r.cst_key[now])
+    poor = (r.has_cst[reference] & r.poor[reference]) | (r.has_cst[now] & r.poor[now])
+    bits = (
+        np.where(recorded, 0, bit("cst_um"))
+        | np.where(recorded & ~comparable, bit("oct_class"), 0)
+        | np.where(poor, bit("scan_quality"), 0)
     )
+    return np.where(told == UNKNOWN, bits, 0)
 
 
-def below_limits(letters: Truth, cst: Truth, joined_by_and: Bools) -> Truth:
-    """Success: good letters and thin retina (or either of them, where the setting says so)."""
-    return np.where(joined_by_and, both(letters, cst), either(letters, cst)).astype(np.int8)
-
-
-__all__ = [
-    "NO",
-    "NOT_RECORDED",
-    "UNKNOWN",
-    "YES",
-    "Change",
-    "Readings",
-    "below_limits",
-    "changed",
-    "cst_comparable",
-    "fewer_letters",
-    "letters_comparable",
-    "more_letters",
-    "pick",
-    "thicker",
-    "thinner",
-    "worse",
-]
+def letters_lack(r: Readings, told: Truth, reference: Ints, now: Ints) -> Ints:
+    """Bits of the columns that keep a comparison of letters from an answer; 0 where it has one."""
+    recorded = r.has_acuity[reference] & r.has_acuity[now]
+    without = (r.has_acuity[reference] & ~r.has_letters[reference]) | (
+        r.has_acuity[now] & ~r.has_letters[now]
+    )
+    in_letters = r.has_letters[reference] & r.has_letters[now]
+    other_chart = in_letters & (r.letters_scale[reference] != r.letters_scale[now])
+    other_correction = in_letters & (r.letters_correction[reference] != r.letters_correction[now])
+    bits = (
+        np.where(recorded, 0, bit("acuity"))
+        | np.where(without | other_chart, bit("acuity_chart"), 0)
+        | np.where(other_correction, bit("acuity_correction"), 0)
+    )
+    return np.where(told == UNKNOWN, bits, 0)

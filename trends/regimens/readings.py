@@ -24,7 +24,7 @@ class Said(IntEnum):
 
 
 def reading_text(said: int, first: int, second: int, third: int) -> str:
-    """The exact words of one reading; what the numbers mean depends on the reading."""
+    """Return the exact words of one reading; what the numbers mean depends on the reading."""
     match said:
         case Said.CANT_TELL:
             return "couldn't tell"

@@ -39,10 +39,11 @@ def either(*parts: Truth) -> Truth:
 
 def opposite(part: Truth) -> Truth:
     """YES and NO exchanged; UNKNOWN stays."""
-    turned: Truth = np.negative(part)
+    turned: Truth = -part
     return turned
 
 
 def where(condition: Answers, then: Any, otherwise: Any) -> Truth:
     """Choose between two answers, place by place."""
-    return np.where(condition, then, otherwise).astype(np.int8)
+    chosen: Truth = np.where(condition, then, otherwise).astype(np.int8)
+    return chosen

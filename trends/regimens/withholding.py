@@ -5,6 +5,7 @@ it and treatments before it; what was then given changes the state for the next 
 """
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
@@ -15,7 +16,11 @@ from trends.regimens.sweep import course_order, sweep
 from trends.regimens.truth import NO, YES, Truth
 
 RECORDED_AFTER_BLANK = 2
-"""After a visit whose treatment wasn't recorded, the two last injections are known again two later."""
+"""After a treatment not recorded, the last two injections are known again two injections later."""
+
+
+State = dict[str, Any]
+"""Columns of the state by name, one entry a course (or, from the trail, one a position)."""
 
 
 @dataclass(frozen=True)
@@ -23,7 +28,7 @@ class Given:
     """What was given at each position, and how the visit counts.
 
     ``injected``, ``not_recorded`` and ``nothing_given`` exclude each other. ``skipped`` visits have
-    no reading of their own; ``unscheduled`` ones have, but neither count as withheld nor break a run.
+    no reading of their own; ``unscheduled`` ones have, but don't count as withheld or break a run.
     ``values_at`` is the position whose measurements stand for the visit, or NONE.
     """
 
@@ -50,20 +55,16 @@ class AsNeeded:
     withholding_start_reference: Bools
 
     def at(self, p: Ints) -> "AsNeeded":
-        """The parameters at the given positions."""
+        """Return the parameters at the given positions."""
         return AsNeeded(
             pick(self.loading, p),
             self.change.at(p),
             pick(self.success_until_day, p),
             pick(self.doubling_from_day, p),
             pick(self.doubling_visits, p),
-            _pick_flag(self.all_pairs, p),
-            _pick_flag(self.withholding_start_reference, p),
+            pick(self.all_pairs, p),
+            pick(self.withholding_start_reference, p),
         )
-
-
-def _pick_flag(values: Bools, positions: Ints) -> Bools:
-    return values[positions] if values.ndim else values
 
 
 @dataclass(frozen=True)
@@ -80,7 +81,7 @@ class Before:
 
 
 class Walk:
-    """State and trail of one sweep. The trail (``trail[name]``, (m,)) is the state before each visit."""
+    """State of one sweep and its trail: ``trail[name]`` (m,) is the state before each visit."""
 
     STATE = {
         "injections": np.int32,
@@ -101,14 +102,16 @@ class Walk:
     ) -> None:
         self._r, self._given, self._params = r, given, params
         first, _ = course_order(courses)
-        self._state = {name: np.zeros(first.size, kind) for name, kind in self.STATE.items()}
+        self._state: State = {name: np.zeros(first.size, kind) for name, kind in self.STATE.items()}
         for name in ("last", "last_but_one", "held_from", "held_last"):
             self._state[name][:] = NONE
         self._state["injections"][:] = before.injections[first]
         self._state["since"][:] = np.minimum(before.injections[first], RECORDED_AFTER_BLANK)
         self._state["first_day"][:] = before.first_day[first]
         self._state["history_unknown"][:] = before.unknown[first]
-        self.trail = {name: np.zeros(courses.rows.size, kind) for name, kind in self.STATE.items()}
+        self.trail: State = {
+            name: np.zeros(courses.rows.size, kind) for name, kind in self.STATE.items()
+        }
         self.met = np.zeros(courses.rows.size, np.int8)
         sweep(courses, self._step)
 
@@ -122,7 +125,7 @@ class Walk:
         _advance(now, self._given, params, met, p)
 
 
-def before_week_24(params: AsNeeded, day: Ints, state: dict[str, np.ndarray]) -> Bools:
+def before_week_24(params: AsNeeded, day: Ints, state: State) -> Bools:
     """Whether success is still asked: nothing injected yet, or earlier than the limit's day."""
     early: Bools = (state["first_day"] == NO_DAY) | (
         day < state["first_day"] + params.success_until_day
@@ -130,10 +133,8 @@ def before_week_24(params: AsNeeded, day: Ints, state: dict[str, np.ndarray]) ->
     return early
 
 
-def criteria_met(
-    r: Readings, params: AsNeeded, given: Given, state: dict[str, np.ndarray], p: Ints
-) -> Truth:
-    """Whether the criteria to withhold are met at positions ``p``, the state being as before them."""
+def criteria_met(r: Readings, params: AsNeeded, given: Given, state: State, p: Ints) -> Truth:
+    """Whether the criteria to withhold are met at ``p``, given the state before."""
     kept = truth.opposite(worse_while_withheld(r, params, state, p))
     met = truth.where(state["held"], kept, stable(r, params, state, p))
     early = before_week_24(params, given.day[p], state)
@@ -141,7 +142,7 @@ def criteria_met(
     return truth.where((state["blank"] > 0) | state["history_unknown"], truth.UNKNOWN, met)
 
 
-def stable(r: Readings, params: AsNeeded, state: dict[str, np.ndarray], p: Ints) -> Truth:
+def stable(r: Readings, params: AsNeeded, state: State, p: Ints) -> Truth:
     """No change between now and the last two injections' visits; NO with fewer than two."""
     last, earlier = state["last"], state["last_but_one"]
     moved = truth.either(
@@ -152,18 +153,14 @@ def stable(r: Readings, params: AsNeeded, state: dict[str, np.ndarray], p: Ints)
     return truth.where(enough, truth.opposite(truth.either(moved, outer)), NO)
 
 
-def worse_while_withheld(
-    r: Readings, params: AsNeeded, state: dict[str, np.ndarray], p: Ints
-) -> Truth:
+def worse_while_withheld(r: Readings, params: AsNeeded, state: State, p: Ints) -> Truth:
     """Worse than at the last withheld visit or, where set, than when withholding began."""
     lately = worse(r, params.change, state["held_last"], p)
     overall = worse(r, params.change, state["held_from"], p)
     return truth.either(lately, truth.where(params.withholding_start_reference, overall, truth.NO))
 
 
-def counts_for_doubling(
-    params: AsNeeded, given: Given, state: dict[str, np.ndarray], p: Ints
-) -> Bools:
+def counts_for_doubling(params: AsNeeded, given: Given, state: State, p: Ints) -> Bools:
     """Whether a visit withheld at ``p`` counts for doubling: late enough and not unscheduled."""
     known = state["first_day"] != NO_DAY
     late = given.day[p] > state["first_day"] + params.doubling_from_day
@@ -171,9 +168,7 @@ def counts_for_doubling(
     return counts
 
 
-def _advance(
-    state: dict[str, np.ndarray], given: Given, params: AsNeeded, met: Truth, p: Ints
-) -> None:
+def _advance(state: State, given: Given, params: AsNeeded, met: Truth, p: Ints) -> None:
     """Take in what was given at ``p``."""
     injected, not_recorded = given.injected[p], given.not_recorded[p]
     not_given = given.nothing_given[p] & ~given.skipped[p] & ~given.unscheduled[p]
@@ -188,17 +183,15 @@ def _advance(
     )
 
 
-def _withhold(state: dict[str, np.ndarray], withheld: Bools, p: Ints) -> None:
+def _withhold(state: State, withheld: Bools, p: Ints) -> None:
     begins = withheld & ~state["held"]
     np.copyto(state["held_from"], p, where=begins)
     np.copyto(state["held_last"], p, where=withheld)
     state["held"] |= withheld
 
 
-def _inject(
-    state: dict[str, np.ndarray], given: Given, params: AsNeeded, injected: Bools, p: Ints
-) -> None:
-    """An injection ends a withholding; its visit becomes the latest to compare with."""
+def _inject(state: State, given: Given, params: AsNeeded, injected: Bools, p: Ints) -> None:
+    """End a withholding where injected; that visit becomes the latest to compare with."""
     state["since"][:] = np.where(
         injected, np.where(state["held"], 1, state["since"] + 1), state["since"]
     )

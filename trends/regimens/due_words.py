@@ -1,0 +1,45 @@
+"""A fixed-interval reading in words, with its working."""
+
+from trends.regimens.courses import DAYS_IN_WEEK, NO_DAY
+from trends.regimens.due_courses import FixedCourses
+from trends.regimens.readings import reading_text
+from trends.regimens.spoken import RegimenInfo
+from trends.regimens.telling import (
+    OPTIONS,
+    date_words,
+    eye_words,
+    number_at,
+    open_choices,
+    value,
+)
+from trends.ruling import Description
+from trends.visits import day_date
+
+
+def describe(courses: FixedCourses, p: int, info: RegimenInfo) -> Description:
+    """Put the reading at a position into words."""
+    w, j = courses.visited, courses.judged
+    told = courses.told
+    reading = reading_text(int(told.said[p]), *(int(number[p]) for number in told.numbers))
+    last = int(j.last_day[p])
+    values, arithmetic = [], [f"injections of this course before the visit: {int(j.injections[p])}"]
+    if last != NO_DAY:
+        date = day_date(last).isoformat()
+        values.append(value("last injection", date_words(last), "", date, "day given"))
+        window = number_at(j.params.window_days, p)
+        weeks = (int(j.due_day[p]) - last) // DAYS_IN_WEEK
+        arithmetic.append(
+            f"{date_words(last)} + {weeks} weeks = {date_words(int(j.due_day[p]))}; "
+            f"less {window} days = {date_words(int(j.due_day[p]) - window)}; "
+            f"visit on {date_words(int(w.day[p]))}"
+        )
+    return Description(
+        sentence=f"{eye_words(w.v, int(w.at[p]))}: {info.title.lower()}: {reading}",
+        values=values,
+        arithmetic=arithmetic,
+        limit=info.form,
+        noise="dates only: no measurement error enters",
+        unknowns=open_choices(courses.limits, info),
+        options=list(OPTIONS),
+        not_for=list(info.not_for),
+    )

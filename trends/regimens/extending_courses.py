@@ -1,0 +1,194 @@
+"""Treat-and-extend courses judged: the reading, what it lacks, and the place after each visit."""
+
+from dataclasses import dataclass
+from functools import cached_property
+from typing import Any
+
+import numpy as np
+
+from trends.limits import Table
+from trends.plans import plans
+from trends.regimens.courses import NONE, Bools, Ints, whole_weeks
+from trends.regimens.extending import (
+    FLUID_NO,
+    FLUID_UNSURE,
+    FLUID_YES,
+    NOT_GRADED,
+    Extending,
+    Judged,
+    Treated,
+)
+from trends.regimens.pairs import Change, cst_lacks, letters_lack
+from trends.regimens.readings import Said
+from trends.regimens.spoken import AtPositions
+from trends.regimens.truth import NO, UNKNOWN, YES, Truth
+from trends.regimens.visited import Visited
+from trends.ruling import bit
+from trends.visits import MISSING
+
+GRADES = {"no": FLUID_NO, "yes": FLUID_YES, "unsure": FLUID_UNSURE, "not_graded": NOT_GRADED}
+ONLY_SHORTEN = ("check_only", "unscheduled", "after_surgery")
+
+
+@dataclass(frozen=True)
+class ExtendingCourses:
+    """The judged courses and what their words need; one entry a position."""
+
+    visited: Visited
+    limits: Table
+
+    @cached_property
+    def judged(self) -> Judged:
+        """The comparison and the plan of each visit."""
+        w, v = self.visited, self.visited.v
+        due_day = plans(v).due_day[w.at]
+        treated = Treated(
+            day=w.day,
+            injected=w.injected,
+            not_recorded=w.not_recorded,
+            due_set=due_day != MISSING,
+            due_day=due_day,
+            only_shortens=w.kind_is(*ONLY_SHORTEN),
+            values_at=w.values_at,
+            irf=w.grade(v.irf, GRADES, NOT_GRADED),
+            srf=w.grade(v.srf, GRADES, NOT_GRADED),
+            earlier_injections=w.earlier_injections(self._number("loading")),
+        )
+        return Judged(w.courses, w.readings, treated, self.params)
+
+    @cached_property
+    def params(self) -> Extending:
+        """The parameters of each course."""
+        number = self._number
+        return Extending(
+            loading=number("loading"),
+            change=Change(number("letters"), number("cst_permille")),
+            step_weeks=number("step_weeks"),
+            least_weeks=number("least_weeks"),
+            most_weeks=number("most_weeks"),
+            late_days=number("late_days"),
+            by_cst=number("by_cst"),
+            by_letters=number("by_letters"),
+            by_fluid=number("by_fluid"),
+        )
+
+    def _number(self, name: str) -> Any:
+        return self.visited.parameter(self.limits, name)
+
+    @cached_property
+    def loading(self) -> Bools:
+        """Whether the course is still loading at the visit."""
+        loading: Bools = self.judged.injections < self.params.loading
+        return loading
+
+    @cached_property
+    def history_unknown(self) -> Bools:
+        """Whether the count is still open because nobody entered what came before the log."""
+        return np.asarray(self.visited.history_unknown & self.loading)
+
+    # What is missing ---------------------------------------------------------------------------
+
+    def _parts_lack(self, parts: dict[str, Truth]) -> Ints:
+        j, at = self.judged, self.visited.courses.at
+        r = j.r
+        return (
+            cst_lacks(r, parts["cst"], j.reference, at)
+            | letters_lack(r, parts["letters"], j.reference, at)
+            | np.where(parts["irf"] == UNKNOWN, bit("irf"), 0)
+            | np.where(parts["srf"] == UNKNOWN, bit("srf"), 0)
+        )
+
+    @cached_property
+    def lacks(self) -> Ints:
+        """Bits of the columns that keep the reading from an answer, loading apart."""
+        j = self.judged
+        bits = np.where(j.worse == UNKNOWN, self._parts_lack(j.worse_parts), 0)
+        planned = j.plan_set_at != NONE
+        holding = planned & (j.worse == NO) & (j.extend == UNKNOWN)
+        bits |= np.where(holding, self._parts_lack(j.holding_parts), 0)
+        bits |= np.where(planned, 0, bit("due_date"))
+        bits = np.where(self.loading, 0, bits)
+        bits = np.where(self.history_unknown, bit("hist_treatments"), bits)
+        return np.where(j.agent_unknown, bit("agent"), bits)
+
+    # The reading -------------------------------------------------------------------------------
+
+    @cached_property
+    def shortens(self) -> Bools:
+        """Worse, with room below the plan."""
+        room: Bools = self.judged.shorter_weeks < self.judged.planned_weeks
+        return np.asarray(room & (self.judged.worse == YES))
+
+    @cached_property
+    def said(self) -> Ints:
+        """The reading of each visit."""
+        j = self.judged
+        shorten = np.where(j.late, Said.SHORTEN_LATE, Said.SHORTEN)
+        extends = (j.worse == NO) & (j.extend == YES)
+        after = np.where(self.shortens, shorten, np.where(extends, Said.EXTEND, Said.KEEP))
+        return np.where(self.lacks > 0, Said.CANT_TELL, np.where(self.loading, Said.LOADING, after))
+
+    @cached_property
+    def last_dry_weeks(self) -> Ints:
+        """Weeks since the treatment before at the last dry visit; NONE where there was none."""
+        j = self.judged
+        return np.where(j.last_dry == NONE, NONE, j.actual_weeks[j.last_dry])
+
+    @cached_property
+    def told(self) -> AtPositions:
+        """The reading of each visit with its numbers."""
+        j, said = self.judged, self.said
+        load, extend = said == Said.LOADING, said == Said.EXTEND
+        late = said == Said.SHORTEN_LATE
+        shorter = np.where((said == Said.SHORTEN) | late, j.shorter_weeks, 0)
+        first = np.where(load, j.injections + 1, np.where(extend, j.longer_weeks, shorter))
+        second = np.where(load, self.params.loading, np.where(late, j.actual_weeks, 0))
+        return AtPositions(
+            said=said,
+            numbers=(first, second, np.where(late, self.last_dry_weeks, 0)),
+            missing=self.lacks,
+            ref=j.last,
+            interval_weeks=self.interval_after,
+        )
+
+    # The place after the visit ------------------------------------------------------------------
+
+    @cached_property
+    def unknown_after(self) -> Bools:
+        """Whether the last treatment isn't known after the visit."""
+        unknown: Bools = self.visited.not_recorded | (
+            self.judged.agent_unknown & ~self.visited.injected
+        )
+        return unknown
+
+    @cached_property
+    def interval_after(self) -> Ints:
+        """Planned weeks from the last treatment to the due day in force after the visit."""
+        j, w, t = self.judged, self.visited, self.judged.treated
+        last = np.where(w.injected, w.courses.at, j.last)
+        plan = np.where(t.due_set, w.courses.at, np.where(w.injected, NONE, j.plan_set_at))
+        weeks = whole_weeks(t.due_day[plan] - w.day[last])
+        known = (plan != NONE) & (last != NONE) & ~self.unknown_after
+        return np.where(known, weeks, NONE)
+
+    def place(self, p: int) -> str:
+        """Where the course stands after the visit at a position."""
+        if self.unknown_after[p]:
+            return "treatment not recorded"
+        if self.history_unknown[p]:
+            return "history not entered"
+        loading = int(np.broadcast_to(self.params.loading, self.visited.day.size)[p])
+        count = int(self.judged.injections[p] + self.visited.injected[p])
+        if count <= loading:
+            return f"loading {count} of {loading}"
+        return self._interval_place(p)
+
+    def _interval_place(self, p: int) -> str:
+        weeks, j = int(self.interval_after[p]), self.judged
+        if weeks == NONE:
+            return "next visit not planned"
+        if not self.visited.injected[p] or j.plan_set_at[p] == NONE:
+            return f"planned at {weeks} weeks"
+        before = int(j.planned_weeks[p])
+        verb = "extended to" if weeks > before else "shortened to" if weeks < before else "kept at"
+        return f"{verb} {weeks} weeks"

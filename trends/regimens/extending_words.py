@@ -1,0 +1,77 @@
+"""A treat-and-extend reading in words, with its working."""
+
+from trends.regimens.courses import NONE
+from trends.regimens.extending_courses import ExtendingCourses
+from trends.regimens.readings import Said, reading_text
+from trends.regimens.spoken import RegimenInfo
+from trends.regimens.telling import (
+    ANSWERS,
+    NOISE,
+    OPTIONS,
+    compared,
+    date_words,
+    eye_words,
+    measured_values,
+    number_at,
+    open_choices,
+)
+from trends.ruling import Description
+
+PARTS = {"cst": "thickness", "letters": "letters", "irf": "IRF", "srf": "SRF"}
+
+
+def describe(courses: ExtendingCourses, p: int, info: RegimenInfo) -> Description:
+    """Put the reading at a position into words."""
+    w, j = courses.visited, courses.judged
+    told = courses.told
+    reading = reading_text(int(told.said[p]), *(int(number[p]) for number in told.numbers))
+    reference = int(j.reference[p])
+    return Description(
+        sentence=f"{eye_words(w.v, int(w.at[p]))}: {info.title.lower()}: {reading}",
+        values=measured_values(w, (reference, p)),
+        arithmetic=_arithmetic(courses, p),
+        limit=info.form,
+        noise=NOISE,
+        unknowns=open_choices(courses.limits, info),
+        options=list(OPTIONS),
+        not_for=list(info.not_for),
+        reference_value=int(w.readings.cst_um[reference])
+        if w.readings.has_cst[reference]
+        else None,
+    )
+
+
+def _arithmetic(courses: ExtendingCourses, p: int) -> list[str]:
+    j, w = courses.judged, courses.visited
+    lines = [f"injections of this course before the visit: {int(j.injections[p])}"]
+    if courses.told.said[p] == Said.LOADING or j.last[p] == NONE:
+        return lines
+    lines.append("against the last treatment visit, " + compared(w, int(j.reference[p]), p))
+    lines += _answers(courses, p)
+    lines.append(_plan_line(courses, p))
+    return lines
+
+
+def _answers(courses: ExtendingCourses, p: int) -> list[str]:
+    j = courses.judged
+    lines = []
+    for title, parts in (("worse", j.worse_parts), ("improving or persists", j.holding_parts)):
+        told = [f"{PARTS[name]} {ANSWERS.get(int(part[p]), 'no')}" for name, part in parts.items()]
+        lines.append(f"{title}: " + ", ".join(told))
+    return lines
+
+
+def _plan_line(courses: ExtendingCourses, p: int) -> str:
+    j, w, params = courses.judged, courses.visited, courses.params
+    if j.plan_set_at[p] == NONE:
+        return "planned interval: no due date set since the last treatment"
+    due = int(j.treated.due_day[j.plan_set_at[p]])
+    last = int(w.day[j.last[p]])
+    off = int(j.days_off_plan[p])
+    return (
+        f"planned interval: {date_words(last)} to {date_words(due)} = {due - last} days = "
+        f"{int(j.planned_weeks[p])} weeks (half up); visit {abs(off)} days "
+        f"{'after' if off > 0 else 'before' if off < 0 else 'off'} the due day "
+        f"(allowed {number_at(params.late_days, p)}); step {number_at(params.step_weeks, p)}, "
+        f"least {number_at(params.least_weeks, p)}, most {number_at(params.most_weeks, p)} weeks"
+    )
