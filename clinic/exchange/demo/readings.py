@@ -8,8 +8,14 @@ from clinic.exchange.demo.model import InventedEye
 from clinic.exchange.demo.numbers import numbers
 from clinic.exchange.demo.rows import Given, Readings
 
-# Standard chart lines from 20/10 down, five letters each; 20/20 is 85 letters.
-LINES_FT = (10, 12.5, 16, 20, 25, 32, 40, 50, 63, 80, 100, 125, 160, 200, 250, 320, 400, 500, 640)
+# Standard chart lines as printed, five letters each, from 20/10 (100 letters) down.
+LINES_FT = (
+    "20/10 20/12.5 20/16 20/20 20/25 20/32 20/40 20/50 20/63 20/80 20/100 20/125 20/160 20/200 "
+    "20/250 20/320 20/400 20/500 20/630"
+).split()
+LINES_DECIMAL = (
+    "2.0 1.6 1.25 1.0 0.8 0.63 0.5 0.4 0.32 0.25 0.2 0.16 0.125 0.1 0.08 0.063 0.05 0.04 0.032"
+).split()
 FIRST_LINE_LETTERS = 100
 
 
@@ -18,10 +24,8 @@ def as_entered(letters: int, chart: str) -> tuple[str, str, str]:
     if chart == "etdrs_letters":
         return str(letters), "etdrs_letters", "etdrs"
     place = min(len(LINES_FT) - 1, max(0, round((FIRST_LINE_LETTERS - letters) / 5)))
-    line = LINES_FT[place]
-    if chart == "snellen_ft":
-        return f"20/{line:g}", "snellen_ft", "snellen"
-    return f"{20 / line:.2f}".rstrip("0"), "decimal", "snellen"
+    lines = LINES_FT if chart == "snellen_ft" else LINES_DECIMAL
+    return lines[place], chart, "snellen"
 
 
 def quality(rng: np.random.Generator) -> str:
