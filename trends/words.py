@@ -21,7 +21,15 @@ NOTATIONS = ("etdrs_letters", "logmar", "snellen_ft", "snellen_m", "decimal", "o
 CHARTS = ("etdrs", "electronic_etdrs", "snellen", "other")
 CORRECTIONS = ("refracted", "glasses", "pinhole", "none")
 IOP_METHODS = ("applanation", "rebound", "non_contact", "other")
+REGIMENS = ("as_needed_stability", "treat_and_extend", "fixed_interval")
 SEXES = ("f", "m")
+ATTENDANCES = (
+    "came",
+    "did_not_come",
+    "cancelled_by_patient",
+    "cancelled_by_clinic",
+    "moved",
+)
 SYMPTOMS = (
     "pain",
     "redness",

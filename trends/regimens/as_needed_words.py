@@ -1,5 +1,6 @@
 """An as-needed reading in words, with its working."""
 
+from trends import saying
 from trends.regimens.courses import NO_DAY, NONE
 from trends.regimens.needing import AsNeededCourses
 from trends.regimens.readings import reading_text
@@ -9,13 +10,12 @@ from trends.regimens.telling import (
     NOISE,
     OPTIONS,
     compared,
-    date_words,
-    eye_words,
     measured_values,
     number_at,
     open_choices,
 )
 from trends.ruling import Description
+from trends.saying import date_words
 
 
 def describe(courses: AsNeededCourses, p: int, info: RegimenInfo) -> Description:
@@ -25,7 +25,7 @@ def describe(courses: AsNeededCourses, p: int, info: RegimenInfo) -> Description
     seen = sorted({ref for ref, _now in _pairs(courses, p)} - {NONE}) + [p]
     reference = int(told.ref[p])
     return Description(
-        sentence=f"{eye_words(w.v, int(w.at[p]))}: {info.title.lower()}: {reading}",
+        sentence=f"{saying.eye(w.v, int(w.at[p]))}: {info.title.lower()}: {reading}",
         values=measured_values(w, seen),
         arithmetic=_arithmetic(courses, p),
         limit=info.form,

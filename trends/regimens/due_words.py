@@ -1,18 +1,18 @@
 """A fixed-interval reading in words, with its working."""
 
+from trends import saying
 from trends.regimens.courses import DAYS_IN_WEEK, NO_DAY
 from trends.regimens.due_courses import FixedCourses
 from trends.regimens.readings import reading_text
 from trends.regimens.spoken import RegimenInfo
 from trends.regimens.telling import (
     OPTIONS,
-    date_words,
-    eye_words,
     number_at,
     open_choices,
     value,
 )
 from trends.ruling import Description
+from trends.saying import date_words
 from trends.visits import day_date
 
 
@@ -34,7 +34,7 @@ def describe(courses: FixedCourses, p: int, info: RegimenInfo) -> Description:
             f"visit on {date_words(int(w.day[p]))}"
         )
     return Description(
-        sentence=f"{eye_words(w.v, int(w.at[p]))}: {info.title.lower()}: {reading}",
+        sentence=f"{saying.eye(w.v, int(w.at[p]))}: {info.title.lower()}: {reading}",
         values=values,
         arithmetic=arithmetic,
         limit=info.form,

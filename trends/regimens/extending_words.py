@@ -1,5 +1,6 @@
 """A treat-and-extend reading in words, with its working."""
 
+from trends import saying
 from trends.regimens.courses import NONE
 from trends.regimens.extending_courses import ExtendingCourses
 from trends.regimens.readings import Said, reading_text
@@ -9,13 +10,12 @@ from trends.regimens.telling import (
     NOISE,
     OPTIONS,
     compared,
-    date_words,
-    eye_words,
     measured_values,
     number_at,
     open_choices,
 )
 from trends.ruling import Description
+from trends.saying import date_words
 
 PARTS = {"cst": "thickness", "letters": "letters", "irf": "IRF", "srf": "SRF"}
 
@@ -27,7 +27,7 @@ def describe(courses: ExtendingCourses, p: int, info: RegimenInfo) -> Descriptio
     reading = reading_text(int(told.said[p]), *(int(number[p]) for number in told.numbers))
     reference = int(j.reference[p])
     return Description(
-        sentence=f"{eye_words(w.v, int(w.at[p]))}: {info.title.lower()}: {reading}",
+        sentence=f"{saying.eye(w.v, int(w.at[p]))}: {info.title.lower()}: {reading}",
         values=measured_values(w, (reference, p)),
         arithmetic=_arithmetic(courses, p),
         limit=info.form,

@@ -5,29 +5,14 @@ from typing import Any
 
 import numpy as np
 
-from trends import words
+from trends import saying
 from trends.limits import Table
 from trends.regimens.courses import NONE
 from trends.regimens.spoken import RegimenInfo
 from trends.regimens.truth import UNKNOWN, YES
 from trends.regimens.visited import Visited
-from trends.visits import MISSING, Visits, day_date
+from trends.saying import date_words
 
-EYES = ("Right eye", "Left eye")
-MONTHS = (
-    "January",
-    "February",
-    "March",
-    "April",
-    "May",
-    "June",
-    "July",
-    "August",
-    "September",
-    "October",
-    "November",
-    "December",
-)
 NOISE = (
     "published repeatability: trials chose 5 letters and 10 % of thickness as steps beyond "
     "measurement error; 10 letters and, by class, 7 to 11 % are given elsewhere"
@@ -43,17 +28,6 @@ OPTIONS = [
 ]
 
 
-def eye_words(v: Visits, row: int) -> str:
-    """Return the eye of a row in words."""
-    return EYES[int(v.side[row])]
-
-
-def date_words(day: int) -> str:
-    """Return a day number as a date in words."""
-    date = day_date(day)
-    return f"{date.day} {MONTHS[date.month - 1]} {date.year}"
-
-
 def number_at(parameter: Any, position: int) -> int:
     """Return a parameter at a position, whether it is one number or one a position."""
     whole = np.asarray(parameter)
@@ -66,33 +40,19 @@ def measured_values(w: Visited, positions: Iterable[int]) -> list[dict[str, Any]
     for p in positions:
         if p == NONE:
             continue
-        row = int(w.at[p])
-        values += _measured(w, p, row)
+        values += _measured(w, int(w.at[p]))
     return values
 
 
-def _measured(w: Visited, p: int, row: int) -> list[dict[str, Any]]:
-    v, r = w.v, w.readings
-    date = day_date(int(v.day[row])).isoformat()
-    values = []
-    if r.has_cst[p]:
-        quality = ", poor scan" if r.poor[p] else ""
-        method = _class_words(v, row) + quality
-        values.append(value("CST", int(r.cst_um[p]), "µm", date, method))
-    if r.has_letters[p]:
-        values.append(value("letters", int(r.letters[p]), "letters", date, ""))
-    elif r.has_acuity[p]:
-        values.append(value("acuity", "not in letters", "", date, ""))
-    agent = v.text("agents", row)
-    values.append(value("given", agent or "not recorded", "", date, ""))
-    return values
-
-
-def _class_words(v: Visits, row: int) -> str:
-    code = int(v.oct_class[row])
-    if code >= 0:
-        return words.OCT_CLASSES[code]
-    return "one scanner, assumed" if v.one_scanner_assumed else "class not recorded"
+def _measured(w: Visited, row: int) -> list[dict[str, Any]]:
+    v = w.v
+    values = [
+        saying.value(v, row, column)
+        for column in ("cst_um", "acuity")
+        if saying.is_given(v, row, column)
+    ]
+    agent = v.text("agents", row) or "not recorded"
+    return [*values, value("given", agent, "", saying.iso(v, row), "")]
 
 
 def value(what: str, shown: int | str, unit: str, date: str, method: str) -> dict[str, Any]:
@@ -115,8 +75,8 @@ def compared(w: Visited, reference: int, now: int) -> str:
     parts = []
     if r.has_cst[reference] and r.has_cst[now]:
         was, is_ = int(r.cst_um[reference]), int(r.cst_um[now])
-        percent = 100 * (is_ - was) / was
-        parts.append(f"CST {was} to {is_} µm ({is_ - was:+d} µm, {percent:+.1f} %)")
+        percent = saying.percent(is_ - was, was)
+        parts.append(f"CST {was} to {is_} µm ({is_ - was:+d} µm, {percent})")
     else:
         parts.append("CST missing at one of the two")
     if r.has_letters[reference] and r.has_letters[now]:
@@ -136,8 +96,3 @@ def open_choices(table: Table, info: RegimenInfo) -> list[str]:
             note = f" ({entry.note})" if entry.note else ""
             lines.append(f"{name} = {entry.value} {entry.unit}{note}")
     return lines
-
-
-def due_words(day: int) -> str:
-    """Return a due day in words, or that none is set."""
-    return "no due date set" if day == MISSING else f"due {date_words(day)}"

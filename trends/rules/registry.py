@@ -2,10 +2,25 @@
 
 from types import ModuleType
 
-from trends.rules import thickening
+from trends.rules import (
+    away,
+    break_off,
+    did_not_come,
+    late,
+    no_plan,
+    thickening,
+    undecided,
+)
 
 VISIT_RULES: tuple[ModuleType, ...] = (thickening,)
-STANDING_RULES: tuple[ModuleType, ...] = ()
+STANDING_RULES: tuple[ModuleType, ...] = (
+    did_not_come,
+    late,
+    break_off,
+    away,
+    no_plan,
+    undecided,
+)
 
 
 def by_id() -> dict[str, ModuleType]:
