@@ -1,4 +1,4 @@
-"""What an eye course or a print holds: finished words and numbers, frozen; same content, same bytes.
+"""What an eye course or a print holds: finished words and numbers, frozen.
 
 It lies under the selectors that fill it and the reports that print it, and knows neither.
 """
@@ -6,7 +6,7 @@ It lies under the selectors that fill it and the reports that print it, and know
 import datetime as dt
 from dataclasses import dataclass, field
 
-from clinic.chart import Panels
+from clinic.chart import EyeGiven, Panels
 
 Words = tuple[str, ...]
 
@@ -134,6 +134,7 @@ class EyeReport:
     side: str
     side_words: str
     chart: Panels
+    given: EyeGiven
     cause: str = ""
     status: str = ""
     regimen: str = ""

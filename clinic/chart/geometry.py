@@ -110,12 +110,16 @@ class Panel:
 
 @dataclass(frozen=True, slots=True)
 class Lane:
-    """One row under the panels: the days of one agent, or of one kind of event, in words."""
+    """One row under the panels: the days of one agent, or of one kind of event, in words.
+
+    ``words`` names the eye too when both are drawn; ``name`` never does.
+    """
 
     words: str
     side: str
     kind: str
     days: tuple[dt.date, ...]
+    name: str
 
 
 @dataclass(frozen=True, slots=True)

@@ -21,6 +21,6 @@ def _lanes(side: str, kind: str, marks: tuple[EyeMark, ...], name_side: bool) ->
         days.setdefault(mark.words, []).append(mark)
     before = f"{SIDE_WORDS[side]}: " if name_side else ""
     return [
-        Lane(before + words, side, kind, tuple(mark.day for mark in same))
+        Lane(before + words, side, kind, tuple(mark.day for mark in same), words)
         for words, same in days.items()
     ]

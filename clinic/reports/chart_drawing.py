@@ -227,4 +227,4 @@ class ChartDrawing:
     ) -> None:
         canvas.setFillColor(ink(tone))
         canvas.setFont(BOLD if bold else REGULAR, SIZE)
-        canvas.drawString(x, y, plain(text))
+        canvas.drawString(x, y, plain(text) + " ")

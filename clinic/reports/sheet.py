@@ -124,7 +124,16 @@ class Sheet:
                 (line, self.paper.left + indent, bold, tone, self.y - size - step * n)
                 for n, line in enumerate(now)
             ]
-            self.paint(marked(tag, [written(*one[:4], one[4], size) for one in words]))
+            # A space ends each line but the last, so that a reader of the tags joins no words.
+            self.paint(
+                marked(
+                    tag,
+                    [
+                        written(text + " " * (n + 1 < len(words)), x, heavy, hue, y, size)
+                        for n, (text, x, heavy, hue, y) in enumerate(words)
+                    ],
+                )
+            )
             self.y -= step * len(now)
 
     def figure(self, height: float, draw: Callable[[Canvas, float], None], alt: str) -> None:

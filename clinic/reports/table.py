@@ -135,7 +135,14 @@ def _words(
         marked(
             tag,
             [
-                written(line, place.x, head, QUIET if head else INK, _base(top, n), SIZE)
+                written(
+                    line + " " * (n + 1 < len(lines)),
+                    place.x,
+                    head,
+                    QUIET if head else INK,
+                    _base(top, n),
+                    SIZE,
+                )
                 for n, line in enumerate(lines)
             ],
             scope="Column" if head else "",

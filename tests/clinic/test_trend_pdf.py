@@ -143,6 +143,18 @@ def test_every_drawn_thing_is_inside_a_mark_or_an_artifact(reader: PdfReader) ->
         assert depth == 0
 
 
+def test_words_of_two_lines_or_labels_are_not_run_together_in_the_tags(made: bytes) -> None:
+    with pdfplumber.open(io.BytesIO(made)) as opened:
+        page = opened.pages[0]
+        by_mark: dict[int, str] = {}
+        for char in page.chars:
+            if char["mcid"] is not None:
+                by_mark[char["mcid"]] = by_mark.get(char["mcid"], "") + char["text"]
+    told = list(by_mark.values())
+    assert "Cause, status diabetic · in treatment" in told
+    assert any("5 weeks after the last injection" in text for text in told)
+
+
 def test_only_our_two_fonts_are_in_it_and_both_are_embedded(reader: PdfReader) -> None:
     fonts = {}
     for page in reader.pages:
