@@ -12,9 +12,9 @@ from clinic.exchange.intake.refused import IntakeRefused
 def test_keys_come_back_as_written_and_are_the_owners_only(tmp_path: Path) -> None:
     path = tmp_path / "keys" / "who.csv"
     keys = {"A,1": "CODE1", 'B"2': "CODE2"}
-    half = prepare_keys(path, keys)
+    prepare_keys(path, keys)
     assert not path.exists()
-    settle_keys(half, path)
+    settle_keys(path)
     assert read_keys(path) == keys
     assert path.stat().st_mode & 0o777 == 0o600
     assert list(path.parent.iterdir()) == [path]
@@ -22,7 +22,8 @@ def test_keys_come_back_as_written_and_are_the_owners_only(tmp_path: Path) -> No
 
 def test_a_key_file_that_others_may_read_is_refused(tmp_path: Path) -> None:
     path = tmp_path / "who.csv"
-    settle_keys(prepare_keys(path, {"A": "X"}), path)
+    prepare_keys(path, {"A": "X"})
+    settle_keys(path)
     os.chmod(path, 0o644)
     with pytest.raises(IntakeRefused, match="owner only"):
         read_keys(path)

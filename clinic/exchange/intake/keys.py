@@ -44,13 +44,18 @@ def read_keys(path: Path) -> dict[str, str]:
     return keys
 
 
-def prepare_keys(path: Path, keys: dict[str, str]) -> Path:
-    """Write the new key file under another name (0600, flushed to disk) and return that name.
+def half_name(path: Path) -> Path:
+    """Return the name a key file has until it is put in its place."""
+    return path.with_name(path.name + ".new")
+
+
+def prepare_keys(path: Path, keys: dict[str, str]) -> None:
+    """Write the new key file under another name (0600, flushed to disk).
 
     It is put in place by ``settle_keys`` after the database has taken the visits: if the machine
     stops in between, the codes are still on disk.
     """
-    half = path.with_name(path.name + ".new")
+    half = half_name(path)
     path.parent.mkdir(mode=0o700, parents=True, exist_ok=True)
     half.unlink(missing_ok=True)
     handle = os.open(half, os.O_WRONLY | os.O_CREAT | os.O_EXCL, 0o600)
@@ -60,9 +65,8 @@ def prepare_keys(path: Path, keys: dict[str, str]) -> Path:
         writer.writerows(sorted(keys.items()))
         lines.flush()
         os.fsync(lines.fileno())
-    return half
 
 
-def settle_keys(half: Path, path: Path) -> None:
+def settle_keys(path: Path) -> None:
     """Put the prepared key file in its place."""
-    os.replace(half, path)
+    os.replace(half_name(path), path)

@@ -129,6 +129,8 @@ def refuse(what: str, value: object, allowed: str, why: str = "") -> IntakeRefus
 
 def read_mapping(path: Path) -> Mapping:
     """Read and check a mapping file; raise ``IntakeRefused`` when something in it can't be used."""
+    if not path.is_file():
+        raise refuse("file", path.name, "a TOML file", "There is none by that name.")
     try:
         return mapping_from(path.read_text(encoding="utf-8"))
     except UnicodeDecodeError as problem:

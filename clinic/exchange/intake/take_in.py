@@ -7,7 +7,7 @@ from pathlib import Path
 from django.db import IntegrityError
 
 from clinic.codes import CodeMistyped, normalise
-from clinic.exchange.intake.keys import prepare_keys, settle_keys
+from clinic.exchange.intake.keys import half_name, prepare_keys, read_keys, settle_keys
 from clinic.exchange.intake.plan import IntakePlan
 from clinic.exchange.intake.refused import IntakeRefused
 from clinic.models import IntakeFile, Patient, Site, User
@@ -28,6 +28,27 @@ def refuse_twice(site: Site, sha256: str) -> None:
             f"The same file was taken in on {before.at:%Y-%m-%d}.",
             "Nothing is to be done; to add visits, export only the new ones.",
         )
+
+
+def recover_keys(site: Site, path: Path) -> str:
+    """Finish or undo a key file that an earlier intake left behind when it was cut off.
+
+    It is written before the commit: if its patients are in the log, the commit happened and the
+    file is the only place that links them to people. Returns what was done, '' if nothing was.
+    """
+    half = half_name(path)
+    if not half.exists():
+        return ""
+    try:
+        codes = set(read_keys(half).values())
+    except IntakeRefused:
+        codes = set()
+    here = Patient.objects.filter(site=site).values_list("code", flat=True)
+    if codes and codes <= set(here):
+        settle_keys(path)
+        return "An earlier intake was cut off after storing; its key file was put in place."
+    half.unlink()
+    return "An earlier intake was cut off before storing; its unfinished key file was removed."
 
 
 def known_patients(site: Site, keys: Mapping[str, str]) -> dict[str, Patient]:
@@ -69,11 +90,10 @@ def take_in(
     at: dt.datetime,
 ) -> Stored:
     """Store the planned file and its keys, or nothing of both."""
-    half: list[Path] = []
 
     def keep_keys(patients: dict[str, Patient]) -> None:
         codes = {source_id: patient.code for source_id, patient in patients.items()}
-        half.append(prepare_keys(key_path, {**keys, **codes}))
+        prepare_keys(key_path, {**keys, **codes})
 
     file = PastFile(
         plan.source.sha256,
@@ -93,8 +113,7 @@ def take_in(
             before_commit=keep_keys,
         )
     except BaseException as problem:
-        for path in half:
-            path.unlink(missing_ok=True)
+        half_name(key_path).unlink(missing_ok=True)
         if isinstance(problem, IntegrityError):
             raise IntakeRefused(
                 "database",
@@ -104,5 +123,5 @@ def take_in(
                 "Look at the plan again with --dry-run.",
             ) from problem
         raise
-    settle_keys(half[0], key_path)
+    settle_keys(key_path)
     return stored

@@ -15,7 +15,12 @@ from clinic.exchange.intake.mapping import HELP, read_mapping
 from clinic.exchange.intake.plan import IntakePlan, plan_intake
 from clinic.exchange.intake.refused import CellsRefused, IntakeRefused, RefusedCell
 from clinic.exchange.intake.source import read_source
-from clinic.exchange.intake.take_in import known_patients, refuse_twice, take_in
+from clinic.exchange.intake.take_in import (
+    known_patients,
+    recover_keys,
+    refuse_twice,
+    take_in,
+)
 from clinic.local import home
 from clinic.models import Membership, Site, User
 from clinic.notice import NOTICE
@@ -74,8 +79,10 @@ class Command(BaseCommand):
         path, mapping = self.existing(options["file"]), read_mapping(options["mapping"])
         source = read_source(path, mapping.sheet)
         self.say(f"Read {len(source.cells):,} rows ({source.read_as}).")
-        refuse_twice(site, source.sha256)
         key_path = options["keys"] or home() / "keys" / f"{site.slug}-{source.sha256[:12]}.csv"
+        if recovered := recover_keys(site, key_path):
+            self.say(recovered)
+        refuse_twice(site, source.sha256)
         keys = read_keys(key_path) if key_path.exists() else {}
         plan = plan_intake(
             source,
