@@ -68,8 +68,8 @@ def grouped(*parts: Ints) -> Ints:
 def previous(v: Visits, usable: Bools, key: Ints, max_age_days: int) -> Previous:
     """Return what each visit compares with.
 
-    ``usable`` (n,) says which rows may be a reference; ``key`` (n,) is equal where two values of one
-    eye may be compared, NONE where a value can be compared with nothing.
+    ``usable`` (n,) says which rows may be a reference; ``key`` (n,) is equal where two values
+    of one eye may be compared, NONE where a value can be compared with nothing.
     """
     eye = v.eye.astype(np.int64)
     last = last_before(v, eye, usable)

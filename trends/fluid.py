@@ -5,10 +5,10 @@ from functools import cached_property
 
 import numpy as np
 
-from trends import words
+from trends import saying, words
 from trends.comparisons import Comparisons
 from trends.limits import Table
-from trends.ruling import bit
+from trends.ruling import Description, Judged, bit
 from trends.visits import MISSING, Bools, Ints, Visits
 
 CLASSES = (*words.OCT_CLASSES, "assumed")
@@ -65,7 +65,7 @@ class Rise:
     def judgeable(self) -> Bools:
         """Measured, with a known class that has a limit and something to compare with."""
         has_limit = (self.classes >= 0) & (self.permille != MISSING)
-        return self.c.cst_given & has_limit & self.c.cst.found
+        return np.asarray(self.c.cst_given & has_limit & self.c.cst.found)
 
     @cached_property
     def percent_met(self) -> Bools:
@@ -73,23 +73,83 @@ class Rise:
         reached = (
             1000 * self.change.astype(np.int64) >= self.permille.astype(np.int64) * self.before
         )
-        return self.judgeable & reached
+        return np.asarray(self.judgeable & reached)
 
     @cached_property
     def certain(self) -> Bools:
         """Beyond the percentage and, where the class has one, beyond the µm repeatability."""
-        return self.percent_met & ((self.um < 0) | (self.change > self.um))
+        return np.asarray(self.percent_met & ((self.um < 0) | (self.change > self.um)))
 
     def missing(self, poor: Bools) -> Ints:
         """Return the missing bits of rows that could not be told."""
         out = np.where(~self.c.cst_given, bit("cst_um"), 0)
         given = self.c.cst_given
         no_class = given & ((self.classes < 0) | (self.permille == MISSING))
+        return out | self._scan_missing(no_class, poor)
+
+    def missing_without_limit(self, poor: Bools) -> Ints:
+        """Return the missing bits for a rule that has limits for one class only."""
+        out = np.where(~self.c.cst_given, bit("cst_um"), 0)
+        return out | self._scan_missing(self.c.cst_given & (self.classes < 0), poor)
+
+    def _scan_missing(self, no_class: Bools, poor: Bools) -> Ints:
+        given = self.c.cst_given
         not_comparable = given & self.c.cst.not_comparable
-        out |= np.where(no_class | not_comparable, bit("oct_class"), 0)
-        return out | np.where(poor & given, bit("scan_quality"), 0)
+        out = np.where(no_class | not_comparable, bit("oct_class"), 0)
+        found: Ints = out | np.where(poor & given, bit("scan_quality"), 0)
+        return found
 
 
 def rise(v: Visits, c: Comparisons, limits: Table) -> Rise:
     """Return the rise of every scan."""
     return Rise(v, c, limits)
+
+
+def limit_words(v: Visits, limits: Table, row: int) -> str:
+    """Return the limit of a row's class in words."""
+    code = int(v.oct_class[row])
+    name = words.OCT_CLASSES[code] if code >= 0 else "assumed"
+    permille, um = limits.get(f"permille_{name}"), limits.get(f"um_{name}")
+    if permille is None:
+        return "no limit for this class: a site choice"
+    return f"at least {permille / 10:g} %" + (f" and more than {um} µm" if um is not None else "")
+
+
+def describe_change(v: Visits, judged: Judged, row: int, limit: str) -> Description:
+    """Put one change of thickness into words."""
+    ref, now = int(judged.ref[row]), int(v.cst_um[row])
+    eye = saying.eye(v, row)
+    if now == MISSING:
+        return Description(f"{eye}: no CST recorded on {saying.day(v, row)}", limit=limit)
+    if ref < 0:
+        return Description(
+            f"{eye}: CST {now} µm, nothing comparable before it",
+            values=saying.values(v, row, ref, "cst_um"),
+            limit=limit,
+        )
+    before = int(v.cst_um[ref])
+    change = now - before
+    verb = "rose" if change > 0 else "fell" if change < 0 else "did not change"
+    size = f" {abs(change)} µm" if change else ""
+    percent = saying.percent(change, before)
+    sentence = (
+        f"{eye}: CST {verb}{size} ({before} to {now}, {percent})"
+        f"{saying.since(v, row, ref)}{saying.treatment_gap(v, row)}"
+    )
+    return Description(
+        sentence=sentence,
+        values=saying.values(v, row, ref, "cst_um"),
+        arithmetic=[
+            f"({now} − {before}) / {before} = {percent}",
+            f"{now} − {before} = {change} µm",
+        ],
+        limit=limit,
+        noise="two scans of one class differ by up to about 10 % or 20 µm by chance",
+        options=[
+            "repeat the scan before the patient leaves, if the scan is doubtful",
+            "weigh the change together with acuity, fluid and the regimen's reading",
+            "no change, look again at the next visit",
+        ],
+        not_for=["scans of two classes or boundaries", "an eye operated on in between"],
+        reference_value=before,
+    )

@@ -3,7 +3,7 @@
 import hashlib
 import tomllib
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field, replace
 from functools import cache
 from importlib import resources
 from typing import Any
@@ -34,6 +34,7 @@ class Table:
     name: str
     entries: Mapping[str, Entry]
     floor_only: bool = False
+    others: "Mapping[str, Table]" = field(default_factory=dict, compare=False, repr=False)
 
     def __getitem__(self, name: str) -> Value:
         return self.entries[name].value
@@ -169,7 +170,9 @@ def floor() -> LimitSet:
 def table_for(limits: LimitSet | None, rule: str, *, is_floor: bool) -> Table | None:
     """Return the entries a rule runs with, or None when it is off."""
     table = limits.rule(rule) if limits is not None else None
-    if table is not None or not is_floor:
-        return table
+    if table is not None and limits is not None:
+        return replace(table, others=limits.rules)
+    if not is_floor:
+        return None
     fallback = floor().rules[rule]
     return Table(rule, fallback.entries, floor_only=True)

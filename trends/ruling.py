@@ -1,7 +1,7 @@
 """The shape of a rule: what it says of itself, and what it returns.
 
-A rule file holds ``INFO`` (a ``RuleInfo``), ``judge(v, limits, c, today) -> Judged`` over all visits
-at once, and ``describe(v, judged, row, limits) -> Description`` for one chosen row.
+A rule file holds ``INFO`` (a ``RuleInfo``), ``judge(v, limits, c, today) -> Judged`` over all
+visits at once, and ``describe(v, judged, row, limits) -> Description`` for one chosen row.
 """
 
 from collections.abc import Sequence
@@ -10,7 +10,7 @@ from typing import Any
 
 import numpy as np
 
-from trends.verdict import NO_RANK, Outcomes, verdict
+from trends.verdict import NO_RANK, RAISED, RANKS, Outcomes, verdict
 from trends.visits import Bools, Ints
 
 # Columns a rule can miss, one bit each, named as in the tidy file.
@@ -37,6 +37,7 @@ MISSABLE = (
     "date",
     "laser",
     "regimen",
+    "hist_treatments",
 )
 
 
@@ -140,4 +141,28 @@ def any_of(parts: Sequence[Part], applies: Bools, blank: Ints | int = 0) -> Judg
         ref=np.where(applies, ref, -1),
         part=np.where(applies, part, -1),
         missing=np.where(applies, missing, 0),
+    )
+
+
+def judged_one(
+    *,
+    known: Any,
+    applies: Any,
+    raised: Any,
+    rank: str,
+    ref: Ints,
+    missing: Ints,
+    still: Any = False,
+    since: Ints | None = None,
+) -> Judged:
+    """Make the ``Judged`` of a rule with one part; ``rank`` is the word of the limit set."""
+    outcome = verdict(known=known, applies=applies, raised=raised, still=still)
+    is_raised = outcome == RAISED
+    return Judged(
+        outcome=outcome,
+        rank=np.where(is_raised, RANKS[rank], NO_RANK).astype(np.int32),
+        ref=np.where(applies, ref, -1),
+        part=np.where(is_raised, 0, -1),
+        missing=np.where(applies & ~np.asarray(known), missing, 0),
+        since=since,
     )

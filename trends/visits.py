@@ -81,9 +81,9 @@ COLUMNS: dict[str, int] = {
 class Visits:
     """Visits of many eyes, sorted by person, right eye first, day and entry order.
 
-    ``columns`` maps each name of ``COLUMNS`` to int32 (n,); ``eye`` (n,) numbers the eyes from 0 and
+    ``columns`` maps each name of ``COLUMNS`` to int32 (n,); ``eye`` (n,) numbers the eyes from 0;
     ``offsets`` (eyes + 1,) says where each starts; ``source_row`` (n,) is the row as given;
-    ``lists`` holds the texts behind codes that aren't closed words (scanner, agents, regimen, ...).
+    ``lists`` holds the texts behind codes that aren't closed words (scanner, agents, regimen).
     """
 
     persons: tuple[str, ...]

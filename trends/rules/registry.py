@@ -3,16 +3,44 @@
 from types import ModuleType
 
 from trends.rules import (
+    acuity_method_changed,
+    alarm_symptoms,
     away,
     break_off,
+    crossed_limit,
+    crossed_limit_possible,
     did_not_come,
+    fluid_back,
     late,
+    letters_lost,
     no_plan,
+    off_chart_step,
+    poor_scan,
+    pressure,
+    pressure_after,
+    scanner_changed,
     thickening,
+    thickening_possible,
+    too_soon,
     undecided,
 )
 
-VISIT_RULES: tuple[ModuleType, ...] = (thickening,)
+VISIT_RULES: tuple[ModuleType, ...] = (
+    thickening,
+    thickening_possible,
+    crossed_limit,
+    crossed_limit_possible,
+    fluid_back,
+    letters_lost,
+    off_chart_step,
+    pressure,
+    pressure_after,
+    alarm_symptoms,
+    too_soon,
+    scanner_changed,
+    acuity_method_changed,
+    poor_scan,
+)
 STANDING_RULES: tuple[ModuleType, ...] = (
     did_not_come,
     late,

@@ -1,4 +1,4 @@
-"""Is the retina thicker than at the last comparable scan, beyond what two scans differ by chance?
+"""The retina is thicker than at the last comparable scan, beyond what two scans differ by chance.
 
 Raised when CST is at least the class's percentage above the last comparable scan and, where the
 class has a published repeatability in µm, by more than that too. Source: repeatability of the class
@@ -9,13 +9,10 @@ across two scanner classes, which is never called a change.
 Raised: 400 to 440 µm on SD-RPE (+10.0 %, +40 µm). Not: 400 to 439 (+9.75 %).
 """
 
-import numpy as np
-
 from trends import fluid
 from trends.comparisons import Comparisons
 from trends.limits import Table
-from trends.ruling import Description, Judged, RuleInfo
-from trends.verdict import RANKS, verdict
+from trends.ruling import Description, Judged, RuleInfo, judged_one
 from trends.visits import Visits
 
 INFO = RuleInfo(
@@ -32,14 +29,17 @@ INFO = RuleInfo(
 def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     """Judge all visits at once; see ``fluid.rise`` for the arithmetic."""
     rise = fluid.rise(v, c, limits)
-    poor_and_not_raised = c.poor & ~rise.certain
-    known = rise.judgeable & ~poor_and_not_raised
-    outcome = verdict(known=known, applies=rise.applies, raised=rise.certain)
-    rank = np.where(outcome == 1, RANKS[str(limits["rank"])], 0).astype(np.int32)
-    missing = np.where(known, 0, rise.missing(poor_and_not_raised))
-    return Judged(outcome, rank, c.cst.ref, np.where(outcome == 1, 0, -1), missing)
+    unsure = c.poor & ~rise.certain
+    return judged_one(
+        known=rise.judgeable & ~unsure,
+        applies=rise.applies,
+        raised=rise.certain,
+        rank=str(limits["rank"]),
+        ref=c.cst.ref,
+        missing=rise.missing(unsure),
+    )
 
 
 def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     """Put one row into words."""
-    return fluid.describe_change(v, judged, row, limits)
+    return fluid.describe_change(v, judged, row, fluid.limit_words(v, limits, row))

@@ -1,0 +1,114 @@
+"""The engine on the command line: ``python -m trends``."""
+
+import argparse
+import datetime as dt
+import sys
+from collections.abc import Sequence
+from pathlib import Path
+
+from trends import ENGINE_VERSION, limits, summary, tidy
+from trends.citations import citation
+from trends.errors import EbblineError, FrameRefused, LimitSetRefused
+from trends.notice import NOTICE
+from trends.review import review
+from trends.wording import verdict_rows
+
+REFUSED = 2
+SHOWN_CELLS = 50
+
+
+def iso_date(text: str) -> dt.date:
+    """Return an ISO date; argparse shows the sentence when it isn't one."""
+    try:
+        return dt.date.fromisoformat(text)
+    except ValueError as error:
+        raise argparse.ArgumentTypeError(
+            f"{text!r} is no date; allowed: a date such as 2026-03-04"
+        ) from error
+
+
+def parser() -> argparse.ArgumentParser:
+    """Return the command's parser."""
+    top = argparse.ArgumentParser(
+        prog="python -m trends",
+        description="Run Ebbline's rules on a tidy file of visits. " + NOTICE,
+    )
+    top.add_argument("--version", action="version", version=ENGINE_VERSION)
+    commands = top.add_subparsers(dest="command", required=True)
+    one = commands.add_parser(
+        "review",
+        help="judge every visit of VISITS.csv",
+        description="Read a tidy file (one row an eye-visit), run a limit set, write one row a "
+        "rule and eye-visit. Exit 2 with row, column, value, allowed range and reason when a cell "
+        "can't be taken; nothing is written then.",
+    )
+    one.add_argument("visits", type=Path, metavar="VISITS.csv")
+    one.add_argument("--limit-set", required=True, metavar="NAME", help="a shipped set's name")
+    one.add_argument("--as-of", required=True, type=iso_date, metavar="DATE", help="2026-03-04")
+    one.add_argument("--out", required=True, type=Path, metavar="VERDICTS.csv")
+    one.add_argument(
+        "--all-working", action="store_true", help="write the working of every outcome"
+    )
+    one.add_argument("--summary", action="store_true", help="print the shares of visits raised")
+    sets = commands.add_parser("limit-sets", help="list the shipped limit sets with sources")
+    sets.add_argument("--brief", action="store_true", help="names and versions only")
+    return top
+
+
+def run_review(options: argparse.Namespace) -> int:
+    """Judge a file; returns the exit code."""
+    try:
+        chosen = limits.shipped(options.limit_set)
+        visits = tidy.read(options.visits, options.as_of)
+    except FrameRefused as refused:
+        for cell in refused.cells[:SHOWN_CELLS]:
+            print(cell, file=sys.stderr)
+        more = len(refused.cells) - SHOWN_CELLS
+        if more > 0:
+            print(f"and {more} more refused cells", file=sys.stderr)
+        return REFUSED
+    except (EbblineError, OSError) as error:
+        print(error, file=sys.stderr)
+        return REFUSED
+    reviewed = review(visits, chosen, options.as_of)
+    rows = verdict_rows(reviewed, all_working=options.all_working)
+    try:
+        count = tidy.write(options.out, rows)
+    except OSError as error:
+        print(f"{options.out} can't be written: {error}", file=sys.stderr)
+        return REFUSED
+    print(f"{count} verdicts on {len(visits)} visits written to {options.out}. {NOTICE}")
+    if options.summary:
+        print(summary.text(reviewed))
+    return 0
+
+
+def run_limit_sets(options: argparse.Namespace) -> int:
+    """List the shipped sets; returns the exit code."""
+    for name in limits.shipped_names():
+        chosen = limits.shipped(name)
+        print(f"{name}, version {chosen.version}: {chosen.title}; for {', '.join(chosen.causes)}")
+        if options.brief:
+            continue
+        for table, entry_name, entry in chosen.entries():
+            mark = " [from memory, check the original]" if entry.memory else ""
+            place = f", {entry.place}" if entry.place else ""
+            print(f"  {table}.{entry_name} = {entry.value} {entry.unit}{mark}")
+            print(f"      {citation(entry.cite).text}{place}")
+            if entry.note:
+                print(f"      {entry.note}")
+    return 0
+
+
+def main(arguments: Sequence[str] | None = None) -> int:
+    """Run the command; returns the exit code."""
+    options = parser().parse_args(arguments)
+    try:
+        return run_review(options) if options.command == "review" else run_limit_sets(options)
+    except LimitSetRefused as error:
+        print(error, file=sys.stderr)
+        return REFUSED
+
+
+if __name__ == "__main__":
+    sys.exit(main())

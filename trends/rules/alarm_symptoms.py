@@ -1,0 +1,132 @@
+"""Symptoms that can't wait: pain, redness, vision loss, blur, floaters, light sensitivity.
+
+A symptom present now is raised first whatever the time since treatment, the status or the kind of
+entry; passed ones are kept in mind. If both eyes were last treated on one day, the fellow eye is
+raised too. Source: symptoms to report without delay (product labels). It would rather raise
+falsely. Runs always and can't be switched off; shows the site's own emergency text.
+
+Raised: a call on day 4, "pain, red, blurred". Not: asked, none.
+"""
+
+import numpy as np
+
+from trends import saying
+from trends.comparable import last_before
+from trends.comparisons import Comparisons
+from trends.limits import Table
+from trends.measures import symptoms
+from trends.ruling import Description, Judged, Part, RuleInfo, any_of, bit
+from trends.verdict import RANKS
+from trends.visits import Bools, Ints, Visits
+
+INFO = RuleInfo(
+    id="alarm_symptoms",
+    version=1,
+    title="Symptoms that can't wait",
+    needs=("symptoms",),
+    cites=("faricimab-smpc",),
+    leans="would rather raise falsely than miss",
+    floor=True,
+    parts=("present now", "fellow eye", "passed"),
+)
+
+
+def last_treated_day(v: Visits) -> Ints:
+    """Return the day of the eye's last treatment on an earlier day (n,), -1 without one."""
+    last = last_before(v, v.eye.astype(np.int64), v.given == 1)
+    return np.where(last >= 0, v.day[last], -1)
+
+
+def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
+    """Judge all visits at once; every status and kind."""
+    asked = v.symptoms_recorded == 1
+    present, gone = v.symptoms_present > 0, v.symptoms_gone > 0
+    fellow, lone = _fellows(v, asked & present)
+    applies = asked | c.measured_kind | fellow
+    lacking = bit("symptoms")
+    parts = [
+        Part(applies, asked, present, RANKS["raise_first"], None, lacking),
+        Part(applies, asked | fellow, fellow, RANKS["raise_first"], None, lacking),
+        Part(applies, asked, gone, RANKS[str(limits["rank_passed"])], None, lacking),
+    ]
+    judged = any_of(parts, applies)
+    return Judged(
+        judged.outcome,
+        judged.rank,
+        judged.ref,
+        judged.part,
+        judged.missing,
+        extra={"fellow_of": lone},
+    )
+
+
+def _fellows(v: Visits, alarmed: Bools) -> tuple[Bools, list[tuple[int, int]]]:
+    """Return the fellow's own rows to raise, and (row, fellow eye) where it has none that day.
+
+    Both eyes' last treatment must fall on one day. Only alarmed rows are walked: they are few.
+    """
+    raised = np.zeros(len(v), dtype=bool)
+    lone: list[tuple[int, int]] = []
+    days = last_treated_day(v)
+    for row in np.flatnonzero(alarmed & (days >= 0)).tolist():
+        other = int(v.eye[row]) + (1 if v.side[row] == 0 else -1)
+        if not 0 <= other < v.offsets.size - 1 or other < 0:
+            continue
+        start, end = int(v.offsets[other]), int(v.offsets[other + 1])
+        if v.person[start] != v.person[row]:
+            continue
+        before = start + np.flatnonzero((v.given[start:end] == 1) & (v.day[start:end] < v.day[row]))
+        if not before.size or v.day[before[-1]] != days[row]:
+            continue
+        same_day = start + np.flatnonzero(v.day[start:end] == v.day[row])
+        raised[same_day] = True
+        if not same_day.size:
+            lone.append((row, other))
+    return raised, lone
+
+
+def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
+    """Put one row into words."""
+    eye, which = saying.eye(v, row), int(judged.part[row])
+    days = int(v.day[row]) - int(last_treated_day_of(v, row))
+    after = f", {days} days after the last treatment" if last_treated_day_of(v, row) >= 0 else ""
+    names = symptoms.names(int(v.symptoms_present[row]) | int(v.symptoms_gone[row]))
+    shown = ", ".join(name.replace("_", " ") for name in names) or "none"
+    present = which == INFO.parts.index("present now")
+    sentence = f"{eye}: {shown} {'now' if present else 'passed'}{after}"
+    if which == INFO.parts.index("fellow eye"):
+        sentence = (
+            f"{eye}: treated on the same day as the fellow eye, which has symptoms now{after}"
+        )
+    if which < 0:
+        sentence = (
+            f"{eye}: symptoms asked, none"
+            if int(v.symptoms_recorded[row])
+            else (f"{eye}: symptoms not asked on {saying.day(v, row)}")
+        )
+    first = which in (0, 1)
+    return Description(
+        sentence=sentence,
+        values=[
+            {
+                "what": "symptoms",
+                "value": shown,
+                "unit": "",
+                "date": saying.iso(v, row),
+                "eye": eye,
+                "method": "asked",
+                "as_entered": shown,
+            }
+        ],
+        limit="any of the list, present now",
+        noise="none: a symptom is what the patient says",
+        options=[] if first else ["ask again", "look again at the next visit"],
+        not_for=["a promise that nothing is wrong when none is named"],
+        emergency=first,
+    )
+
+
+def last_treated_day_of(v: Visits, row: int) -> int:
+    """Return the day of the last treatment before one row, -1 without one."""
+    last = saying.last_treatment(v, row)
+    return int(v.day[last]) if last >= 0 else -1

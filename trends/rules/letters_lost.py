@@ -1,0 +1,128 @@
+"""Vision fell: ten letters, five twice running, five together with thickening, or two lines.
+
+Ten: 10 or more letters below the last comparable acuity. Twice: this and the preceding comparable
+acuity are both 5 or more below the median of the three before them. With thickening: 5 or more
+together with certain thickening at the same visit. Off five-letter charts the only part is a fall
+of 0.20 logMAR (two lines), the suffix ignored. Source: repeatability of ETDRS testing (limit set).
+It would rather miss a single five-letter fall than raise on noise. Doesn't apply off the chart.
+
+Raised: 70 to 60 letters. Not: 70 to 61.
+"""
+
+import numpy as np
+
+from trends import fluid, saying, words
+from trends.comparisons import Comparisons
+from trends.limits import Table
+from trends.ruling import Description, Judged, Part, RuleInfo, any_of, bit
+from trends.verdict import RANKS
+from trends.vision import Loss
+from trends.visits import MISSING, Bools, Visits
+
+INFO = RuleInfo(
+    id="letters_lost",
+    version=1,
+    title="Letters lost",
+    needs=("acuity", "acuity_chart", "acuity_correction"),
+    cites=("beck-2003", "nct00442156"),
+    leans="would rather miss a single five-letter fall than raise on noise",
+    parts=("ten", "lines", "with thickening", "twice"),
+)
+
+
+def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
+    """Judge all visits at once; the thickening part uses the set's own thickening limits."""
+    loss = Loss(v, c)
+    on_chart = (v.acuity_level < 0) | (v.acuity_level == words.ON_CHART)
+    given = c.letters_given
+    applies = c.followed & on_chart & (given | c.measured_kind)
+    lacking = np.where(given, bit("acuity_chart") | bit("acuity_correction"), bit("acuity"))
+    letters, earlier = given & loss.five_letters, given & c.acuity.any_earlier
+    first, lower = RANKS[str(limits["rank"])], RANKS[str(limits["rank_twice"])]
+    ten = loss.since_last >= limits.number("ten_e4")
+    lines = loss.since_last >= limits.number("lines_e4")
+    parts = [
+        Part(earlier & letters, loss.found, ten, first, c.acuity.ref, lacking),
+        Part(earlier & ~letters, loss.found, lines, first, c.acuity.ref, lacking),
+        _with_thickening(v, limits, c, loss, first),
+        _twice(limits, c, loss, lower),
+    ]
+    return any_of(parts, applies, np.where(given, 0, bit("acuity")))
+
+
+def _with_thickening(v: Visits, limits: Table, c: Comparisons, loss: Loss, rank: int) -> Part:
+    thickening = limits.others.get("thickening")
+    if thickening is None:
+        off = np.zeros(len(v), dtype=bool)
+        return Part(off, off, off, rank)
+    rise = fluid.rise(v, c, thickening)
+    unsure_scan = c.poor & ~rise.certain
+    thick_known: Bools = rise.judgeable & ~unsure_scan
+    five = loss.found & (loss.since_last >= limits.number("five_e4"))
+    known_not = (loss.found & ~five) | (thick_known & ~rise.certain)
+    both = five & rise.certain
+    has_earlier = c.acuity.any_earlier & c.cst.any_earlier
+    scan_due = c.cst_given | c.measured_kind
+    applies = c.letters_given & loss.five_letters & has_earlier & scan_due
+    missing = np.where(loss.found, 0, bit("acuity_chart") | bit("acuity_correction"))
+    missing |= np.where(thick_known, 0, rise.missing(unsure_scan))
+    return Part(applies, known_not | both, both, rank, c.acuity.ref, missing)
+
+
+def _twice(limits: Table, c: Comparisons, loss: Loss, rank: int) -> Part:
+    five = limits.number("five_e4")
+    logmar = loss.v.logmar_e4.astype(np.int64)
+    median = loss.median_before.astype(np.int64)
+    chain_whole = loss.median_before != MISSING
+    last = np.maximum(loss.chain[0], 0)
+    met = chain_whole & (logmar - median >= five) & (logmar[last] - median >= five)
+    enough = loss.earlier_count >= len(loss.chain)
+    applies = c.letters_given & loss.five_letters & (chain_whole | enough)
+    missing = bit("acuity_chart") | bit("acuity_correction")
+    return Part(applies, chain_whole, met, rank, loss.chain[0], missing)
+
+
+def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
+    """Put one row into words."""
+    ref, eye, which = int(judged.ref[row]), saying.eye(v, row), int(judged.part[row])
+    if int(v.logmar_e4[row]) == MISSING:
+        return Description(f"{eye}: no acuity recorded on {saying.day(v, row)}")
+    if ref < 0:
+        now = saying.value(v, row, "acuity")["value"]
+        return Description(
+            f"{eye}: acuity {now}, nothing comparable before it",
+            values=saying.values(v, row, ref, "acuity"),
+        )
+    lost = int(v.logmar_e4[row]) - int(v.logmar_e4[ref])
+    counted = int(v.five_letter_chart[row]) == 1
+    sentence = f"{eye}: {_change(v, row, ref, lost, counted)}"
+    sentence += saying.since(v, row, ref) + saying.treatment_gap(v, row)
+    if which == INFO.parts.index("with thickening"):
+        sentence += ", together with thickening at the same visit"
+    if which == INFO.parts.index("twice"):
+        sentence = (
+            f"{eye}: five or more letters below the median of three, at two visits running"
+            f"{saying.treatment_gap(v, row)}"
+        )
+    return Description(
+        sentence=sentence,
+        values=saying.values(v, row, ref, "acuity"),
+        arithmetic=[f"{lost / 10_000:+.2f} logMAR = {-lost / 200:+g} letters".replace("-", "−")],
+        limit="10 letters at once; 5 twice running or with thickening; two lines off ETDRS charts",
+        noise="a change of 10 letters is unlikely to be variability; 5 may be (Beck 2003)",
+        options=[
+            "repeat the acuity with the same chart and correction",
+            "weigh it together with thickness, lens and surface of the eye",
+            "no change, look again at the next visit",
+        ],
+        not_for=["acuities by two charts or corrections", "eyes off the chart"],
+        reference_value=str(saying.value(v, ref, "acuity")["value"]),
+    )
+
+
+def _change(v: Visits, row: int, ref: int, lost: int, counted: bool) -> str:
+    before = saying.value(v, ref, "acuity")["value"]
+    now = saying.value(v, row, "acuity")["value"]
+    verb = "fell" if lost > 0 else "rose" if lost < 0 else "did not change"
+    size = f" {abs(lost) / 200:g} letters" if counted else f" {abs(lost) / 1000:.1f} lines"
+    return f"acuity {verb}{size if lost else ''} ({before} to {now})"

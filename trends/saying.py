@@ -1,0 +1,122 @@
+"""Phrases every sentence shares: the eye in words, dates, gaps, values with unit and method."""
+
+from typing import Any
+
+import numpy as np
+
+from trends import words
+from trends.measures import pressure, thickness
+from trends.visits import MISSING, Visits, day_date
+
+MONTHS_OLD_AFTER_DAYS = 183
+EYES = {0: "Right eye", 1: "Left eye"}
+
+
+def eye(v: Visits, row: int) -> str:
+    """Return "Right eye" or "Left eye"."""
+    return EYES[int(v.side[row])]
+
+
+def day(v: Visits, row: int) -> str:
+    """Return a visit's date as ``3 February 2025``."""
+    return date_words(int(v.day[row]))
+
+
+def date_words(number: int) -> str:
+    """Return a day number as a date in words."""
+    one = day_date(number)
+    return f"{one.day} {one:%B %Y}"
+
+
+def since(v: Visits, row: int, ref: int) -> str:
+    """Return " since DATE", with the age of an old reference."""
+    if ref < 0:
+        return ""
+    days = int(v.day[row] - v.day[ref])
+    old = f" ({days * 12 // 365} months old)" if days > MONTHS_OLD_AFTER_DAYS else ""
+    return f" since {day(v, ref)}{old}"
+
+
+def last_treatment(v: Visits, row: int) -> int:
+    """Return the row of the eye's last treatment on an earlier day, or -1."""
+    start = int(v.offsets[v.eye[row]])
+    before = np.flatnonzero((v.given[start:row] == 1) & (v.day[start:row] < v.day[row]))
+    return int(before[-1]) + start if before.size else -1
+
+
+def treatment_gap(v: Visits, row: int) -> str:
+    """Return ", 9 weeks after the last treatment", in days when under two weeks."""
+    last = last_treatment(v, row)
+    if last < 0:
+        return ""
+    days = int(v.day[row] - v.day[last])
+    gap = f"{days} days" if days < 14 else f"{days // 7} weeks"
+    return f", {gap} after the last treatment ({v.text('agents', last)})"
+
+
+def percent(change: int, before: int) -> str:
+    """Return a change in per cent of a reference, one digit, half up in size, signed."""
+    tenths = (abs(change) * 2000 + before) // (2 * before)
+    sign = "+" if change > 0 else "−" if change < 0 else ""
+    return f"{sign}{tenths // 10}.{tenths % 10} %"
+
+
+def _cst(v: Visits, row: int) -> tuple[str, str, str]:
+    code = int(v.oct_class[row])
+    method = thickness.CLASS_WORDS[words.OCT_CLASSES[code]] if code >= 0 else "class not recorded"
+    return "CST", str(int(v.cst_um[row])), method
+
+
+def _acuity(v: Visits, row: int) -> tuple[str, str, str]:
+    code = int(v.acuity_correction[row])
+    correction = words.CORRECTIONS[code] if code >= 0 else "correction not recorded"
+    level = int(v.acuity_level[row])
+    if 0 <= level < words.ON_CHART:
+        return "acuity", words.OFF_CHART[level], correction
+    letters = int(v.letters[row])
+    shown = (
+        f"{letters} letters" if letters != MISSING else f"{v.logmar_e4[row] / 10_000:.2f} logMAR"
+    )
+    return "acuity", shown, correction
+
+
+def _iop(v: Visits, row: int) -> tuple[str, str, str]:
+    code = int(v.iop_method[row])
+    method = words.IOP_METHODS[code] if code >= 0 else "tonometer not recorded"
+    return "IOP", pressure.shown(int(v.iop_tenths[row])), method
+
+
+SHOWN = {"cst_um": (_cst, "µm"), "acuity": (_acuity, ""), "iop_mmhg": (_iop, "mmHg")}
+GIVEN = {"cst_um": "cst_um", "acuity": "acuity_level", "iop_mmhg": "iop_tenths"}
+
+
+def is_given(v: Visits, row: int, column: str) -> bool:
+    """Say whether a quantity was measured at a row."""
+    return row >= 0 and int(v.columns[GIVEN[column]][row]) >= 0
+
+
+def value(v: Visits, row: int, column: str) -> dict[str, Any]:
+    """Return one value used: what, value, unit, date, method, as entered."""
+    show, unit = SHOWN[column]
+    what, shown, method = show(v, row)
+    entered = v.as_entered.get("acuity" if column == "acuity" else column)
+    source = int(v.source_row[row])
+    return {
+        "what": what,
+        "value": shown,
+        "unit": unit,
+        "date": day_date(int(v.day[row])).isoformat(),
+        "eye": eye(v, row),
+        "method": method,
+        "as_entered": str(entered[source]) if entered is not None else shown,
+    }
+
+
+def values(v: Visits, row: int, ref: int, column: str) -> list[dict[str, Any]]:
+    """Return the reference's value and the row's own, where they are given."""
+    return [value(v, one, column) for one in (ref, row) if is_given(v, one, column)]
+
+
+def iso(v: Visits, row: int) -> str:
+    """Return a visit's date as ISO text."""
+    return day_date(int(v.day[row])).isoformat()
