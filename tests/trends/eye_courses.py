@@ -2,7 +2,7 @@
 
 import datetime as dt
 import tomllib
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping
 from pathlib import Path
 from typing import Any
 
@@ -92,8 +92,3 @@ def toml(value: Any) -> str:
     if isinstance(value, bool):
         return str(value).lower()
     return str(value) if isinstance(value, int) else f'"{value}"'
-
-
-def in_chunks(items: Sequence[Any], size: int) -> list[Sequence[Any]]:
-    """Return the items in runs of a size."""
-    return [items[start : start + size] for start in range(0, len(items), size)]

@@ -37,7 +37,15 @@ INFO = RegimenInfo(
     ),
     cites=("wells-2015", "elman-2010", "pdr-algorithm-fig1"),
     leans="would rather treat once more than withhold on a change it can't exclude",
-    choices=("comparison", "cst_permille", "success_letters", "success_joined_by"),
+    choices=(
+        "comparison",
+        "withholding_start_reference",
+        "cst_permille",
+        "letters",
+        "success_letters",
+        "success_joined_by",
+        "doubling_visits",
+    ),
     not_for=(
         "Success before week 24 is for diabetic macular edema only; other causes have none.",
         "Acuity that isn't on a 5-letter chart can't feed the letter criteria.",

@@ -1,16 +1,18 @@
 """An as-needed reading in words, with its working."""
 
-from trends import saying
 from trends.regimens.courses import NO_DAY, NONE
 from trends.regimens.needing import AsNeededCourses
-from trends.regimens.readings import reading_text
+from trends.regimens.readings import Said, reading_text
 from trends.regimens.spoken import RegimenInfo
 from trends.regimens.telling import (
     ANSWERS,
     NOISE,
     OPTIONS,
+    changes,
     compared,
+    headline,
     measured_values,
+    missing_words,
     number_at,
     open_choices,
 )
@@ -22,11 +24,11 @@ def describe(courses: AsNeededCourses, p: int, info: RegimenInfo) -> Description
     """Put the reading at a position into words."""
     w, told = courses.visited, courses.told
     reading = reading_text(int(told.said[p]), *(int(number[p]) for number in told.numbers))
-    seen = sorted({ref for ref, _now in _pairs(courses, p)} - {NONE}) + [p]
+    seen = sorted({ref for ref, _now in _pairs(courses, p)} - {NONE})
     reference = int(told.ref[p])
     return Description(
-        sentence=f"{saying.eye(w.v, int(w.at[p]))}: {info.title.lower()}: {reading}",
-        values=measured_values(w, seen),
+        sentence=headline(w, p, info, f"{reading} ({_why(courses, p)})"),
+        values=measured_values(w, seen, p),
         arithmetic=_arithmetic(courses, p),
         limit=info.form,
         noise=NOISE,
@@ -37,6 +39,19 @@ def describe(courses: AsNeededCourses, p: int, info: RegimenInfo) -> Description
         if w.readings.has_cst[reference]
         else None,
     )
+
+
+def _why(courses: AsNeededCourses, p: int) -> str:
+    """Return what the reading rests on, in brackets behind it."""
+    told, s = courses.told, courses.state
+    if told.said[p] == Said.CANT_TELL:
+        return missing_words(int(told.missing[p]))
+    reference = int(told.ref[p])
+    if reference == NONE:
+        return f"injections in this course so far: {int(s['injections'][p])}"
+    when = date_words(int(courses.visited.day[reference]))
+    since = "withholding began" if s["held"][p] else "the last injection visit"
+    return f"{changes(courses.visited, reference, p)} since {since}, {when}"
 
 
 def _pairs(courses: AsNeededCourses, p: int) -> list[tuple[int, int]]:

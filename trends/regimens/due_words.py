@@ -1,12 +1,13 @@
 """A fixed-interval reading in words, with its working."""
 
-from trends import saying
 from trends.regimens.courses import DAYS_IN_WEEK, NO_DAY
 from trends.regimens.due_courses import FixedCourses
-from trends.regimens.readings import reading_text
+from trends.regimens.readings import Said, reading_text
 from trends.regimens.spoken import RegimenInfo
 from trends.regimens.telling import (
     OPTIONS,
+    headline,
+    missing_words,
     number_at,
     open_choices,
     value,
@@ -34,7 +35,7 @@ def describe(courses: FixedCourses, p: int, info: RegimenInfo) -> Description:
             f"visit on {date_words(int(w.day[p]))}"
         )
     return Description(
-        sentence=f"{saying.eye(w.v, int(w.at[p]))}: {info.title.lower()}: {reading}",
+        sentence=headline(w, p, info, f"{reading} ({_why(courses, p)})"),
         values=values,
         arithmetic=arithmetic,
         limit=info.form,
@@ -43,3 +44,13 @@ def describe(courses: FixedCourses, p: int, info: RegimenInfo) -> Description:
         options=list(OPTIONS),
         not_for=list(info.not_for),
     )
+
+
+def _why(courses: FixedCourses, p: int) -> str:
+    """Return what the reading rests on, in brackets behind it."""
+    told, j = courses.told, courses.judged
+    if told.said[p] == Said.CANT_TELL:
+        return missing_words(int(told.missing[p]))
+    if told.said[p] == Said.LOADING:
+        return f"injections in this course so far: {int(j.injections[p])}"
+    return f"last injection {date_words(int(j.last_day[p]))}, due {date_words(int(j.due_day[p]))}"

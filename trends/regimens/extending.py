@@ -19,7 +19,7 @@ from trends.regimens.pairs import (
     thicker,
     thinner,
 )
-from trends.regimens.truth import NO, UNKNOWN, YES, Truth
+from trends.regimens.truth import NO, Truth
 
 NOT_GRADED, FLUID_NO, FLUID_YES, FLUID_UNSURE = 0, 1, 2, 3
 """Codes of IRF and SRF here; blank and not graded are one."""
@@ -215,9 +215,3 @@ class Judged:
         """Whether the plan is extended, worse being NO: nothing holds it and there is room."""
         room = (self.longer_weeks > self.planned_weeks) & ~self.never_extends
         return truth.where(room, truth.opposite(self.holding), NO)
-
-    @cached_property
-    def decided(self) -> Bools:
-        """Whether the plan is known and the comparison answers."""
-        known: Bools = (self.plan_set_at != NONE) & (self.worse != UNKNOWN)
-        return np.asarray(known & ((self.worse == YES) | (self.extend != UNKNOWN)))

@@ -1,6 +1,5 @@
 """A treat-and-extend reading in words, with its working."""
 
-from trends import saying
 from trends.regimens.courses import NONE
 from trends.regimens.extending_courses import ExtendingCourses
 from trends.regimens.readings import Said, reading_text
@@ -9,11 +8,15 @@ from trends.regimens.telling import (
     ANSWERS,
     NOISE,
     OPTIONS,
+    changes,
     compared,
+    headline,
     measured_values,
+    missing_words,
     number_at,
     open_choices,
 )
+from trends.regimens.truth import YES
 from trends.ruling import Description
 from trends.saying import date_words
 
@@ -27,8 +30,8 @@ def describe(courses: ExtendingCourses, p: int, info: RegimenInfo) -> Descriptio
     reading = reading_text(int(told.said[p]), *(int(number[p]) for number in told.numbers))
     reference = int(j.reference[p])
     return Description(
-        sentence=f"{saying.eye(w.v, int(w.at[p]))}: {info.title.lower()}: {reading}",
-        values=measured_values(w, (reference, p)),
+        sentence=headline(w, p, info, f"{reading} ({_why(courses, p)})"),
+        values=measured_values(w, (reference,), p),
         arithmetic=_arithmetic(courses, p),
         limit=info.form,
         noise=NOISE,
@@ -39,6 +42,28 @@ def describe(courses: ExtendingCourses, p: int, info: RegimenInfo) -> Descriptio
         if w.readings.has_cst[reference]
         else None,
     )
+
+
+def _why(courses: ExtendingCourses, p: int) -> str:
+    """Return what the reading rests on, in brackets behind it."""
+    told, j = courses.told, courses.judged
+    if told.said[p] == Said.CANT_TELL:
+        return missing_words(int(told.missing[p]))
+    if told.said[p] == Said.LOADING:
+        return f"injections in this course so far: {int(j.injections[p])}"
+    when = date_words(int(courses.visited.day[j.last[p]]))
+    seen = changes(courses.visited, int(j.reference[p]), p)
+    return f"{_reasons(courses, p)}{seen} since the last treatment visit, {when}"
+
+
+def _reasons(courses: ExtendingCourses, p: int) -> str:
+    """Return which parts made it worse or, where it isn't, which keep it from extending."""
+    j = courses.judged
+    for title, parts in (("worse", j.worse_parts), ("improving or persists", j.holding_parts)):
+        named = [PARTS[name] for name, part in parts.items() if part[p] == YES]
+        if named:
+            return f"{title}: {', '.join(named)}; "
+    return ""
 
 
 def _arithmetic(courses: ExtendingCourses, p: int) -> list[str]:

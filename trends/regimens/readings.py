@@ -7,6 +7,9 @@ import numpy.typing as npt
 
 from trends.regimens.courses import NONE, Ints
 
+RADIX = 1 << 16
+"""Above every number a reading can hold, so that a reading packs into one whole number."""
+
 
 class Said(IntEnum):
     """The readings. NOTHING: the regimen doesn't apply at this visit."""
@@ -55,7 +58,9 @@ def reading_texts(said: npt.NDArray[np.int8], numbers: Ints) -> list[str]:
     """Words for many visits; ``numbers`` is (m, 3). Each distinct reading is worded once."""
     if not said.size:
         return []
-    coded = np.column_stack([said, numbers])
-    distinct, which = np.unique(coded, axis=0, return_inverse=True)
-    words = [reading_text(*(int(part) for part in row)) for row in distinct]
-    return [words[index] for index in which.ravel().tolist()]
+    packed = said.astype(np.int64)
+    for part in range(numbers.shape[1]):
+        packed = packed * RADIX + numbers[:, part] + 1
+    _distinct, first, which = np.unique(packed, return_index=True, return_inverse=True)
+    words = [reading_text(int(said[at]), *(int(number) for number in numbers[at])) for at in first]
+    return [words[index] for index in which.tolist()]
