@@ -7,7 +7,7 @@ from clinic.chart.geometry import DayTick, TimeAxis
 
 MONTH_STEPS = (1, 2, 3, 6, 12, 24, 60, 120)
 DAY_STEPS = (1, 2, 7, 14)
-MOST_TICKS = 7
+MOST_TICKS = 8
 LEAST_DAYS = 28
 DAYS_A_MONTH = 30.44
 
@@ -24,7 +24,7 @@ def time_axis(days: list[dt.date]) -> TimeAxis:
 
 
 def ticks_between(first: dt.date, last: dt.date) -> Iterator[DayTick]:
-    """Yield at most about seven ticks on the finest round step that fits."""
+    """Yield at most about eight ticks on the finest round step that fits."""
     span = (last - first).days
     for step in DAY_STEPS:
         if span / step <= MOST_TICKS:

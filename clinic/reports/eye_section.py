@@ -3,22 +3,24 @@
 from clinic.chart.spoken import spoken
 from clinic.content import Dated, EyeReport, VisitRow
 from clinic.reports.chart_drawing import ChartDrawing
+from clinic.reports.fonts import STAYS
 from clinic.reports.paper import QUIET
 from clinic.reports.sheet import Sheet
-from clinic.reports.table import Column, Row, table
+from clinic.reports.table import Row, table
 from clinic.reports.words import day_words, joined, rules
 from clinic.reports.working import missing, verdict
 
 VISITS = (
-    Column("Visit", 1.2),
-    Column("CST, scanner", 1.35),
-    Column("Fluid", 1.0),
-    Column("Acuity", 1.35),
-    Column("IOP", 1.1),
-    Column("Treated", 1.4),
-    Column("Regimen's reading", 1.5),
-    Column("Decided", 1.15),
-    Column("Next due", 1.05),
+    "Visit",
+    "CST, scanner",
+    "Fluid",
+    "Acuity",
+    "IOP",
+    "Symptoms",
+    "Treated",
+    "Regimen's reading",
+    "Decided",
+    "Next due",
 )
 
 
@@ -101,28 +103,31 @@ def _visits(sheet: Sheet, eye: EyeReport) -> None:
 def visit_row(row: VisitRow) -> Row:
     """Return a visit as a table row, its notes and corrections in a line under it."""
     cells = (
-        joined((day_words(row.day), row.kind), "\n"),
+        joined((day_words(row.day).replace(" ", STAYS), row.kind), "\n"),
         joined((row.cst, row.scanner), "\n"),
         row.fluid,
         joined((row.letters, row.acuity), "\n"),
         row.iop,
+        row.symptoms,
         row.treated,
         row.reading,
         row.decided,
         row.due,
     )
-    return Row(cells, joined((row.symptoms, row.note, *row.changes)))
+    return Row(cells, joined((row.note, *row.changes)))
 
 
 def _decisions(sheet: Sheet, eye: EyeReport) -> None:
-    if not eye.decisions:
+    """Write the decisions that give a reason; every decision stands with its visit."""
+    told = [row for row in eye.decisions if row.because]
+    if not told:
         return
-    sheet.heading(3, "Decisions", keep=50)
-    columns = (Column("Visit", 1), Column("Decided", 2), Column("Because", 3), Column("By", 1.4))
+    sheet.heading(3, "Decisions with a reason", keep=50)
+    columns = ("Visit", "Decided", "Because", "By")
     table(
         sheet,
         columns,
-        [Row((day_words(row.day), row.choice, row.because, row.by)) for row in eye.decisions],
+        [Row((day_words(row.day), row.choice, row.because, row.by)) for row in told],
     )
 
 
@@ -132,12 +137,12 @@ def _answers(sheet: Sheet, eye: EyeReport) -> None:
         return
     sheet.heading(3, "Answers", keep=50)
     columns = (
-        Column("Visit", 1),
-        Column("Raised", 2.4),
-        Column("Rank", 1),
-        Column("Answer", 1.6),
-        Column("Because", 2),
-        Column("By", 1.4),
+        "Visit",
+        "Raised",
+        "Rank",
+        "Answer",
+        "Because",
+        "By",
     )
     rows = [
         Row((day_words(row.day), row.title, row.rank, row.answer or "open", row.because, row.by))

@@ -8,6 +8,7 @@ REGULAR, BOLD = "EbblineSans", "EbblineSansBold"
 FOLDER = Path(__file__).parent / "fonts"
 FILES = {REGULAR: "DejaVuSans.ttf", BOLD: "DejaVuSans-Bold.ttf"}
 UNKNOWN = "\N{REPLACEMENT CHARACTER}"
+STAYS = "\N{NO-BREAK SPACE}"
 
 
 @lru_cache(maxsize=1)
@@ -41,7 +42,7 @@ def plain(text: str) -> str:
     composed = unicodedata.normalize("NFC", text)
     covered = _covered()
     return "".join(
-        " " if sign.isspace() else sign if ord(sign) in covered else UNKNOWN
+        " " if sign.isspace() and sign != STAYS else sign if ord(sign) in covered else UNKNOWN
         for sign in composed
         if sign.isspace() or unicodedata.category(sign)[0] != "C"
     )

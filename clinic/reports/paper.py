@@ -15,7 +15,7 @@ class Paper:
     name: str
     width: float
     height: float
-    side: float = 15 * MM
+    side: float = 14 * MM
     head: float = 17 * MM
     foot: float = 20 * MM
 

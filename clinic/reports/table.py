@@ -1,8 +1,12 @@
-"""Tables that flow over pages: headers repeat, cells wrap, a row too tall for a page is divided."""
+"""Tables that flow over pages: headers repeat, cells wrap, a row too tall for a page is divided.
+
+Columns are as wide as their words need; what is left is shared by what their lines would like.
+"""
 
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+from clinic.reports.column_widths import PAD_X, SIZE, Row, Wish, shared, wished
 from clinic.reports.paper import INK, QUIET, RULE, SHADE
 from clinic.reports.sheet import (
     LEADING,
@@ -18,26 +22,9 @@ from clinic.reports.sheet import (
 )
 from clinic.reports.wrap import lines_of
 
-SIZE = 7.0
 STEP = SIZE * LEADING
-PAD_X, PAD_Y = 3.0, 2.2
+PAD_Y = 2.2
 Lines = tuple[str, ...]
-
-
-@dataclass(frozen=True, slots=True)
-class Column:
-    """A column: its header and its share of the width."""
-
-    title: str
-    share: float
-
-
-@dataclass(frozen=True, slots=True)
-class Row:
-    """A row: one text a column, and perhaps a line under them over the whole width."""
-
-    cells: Sequence[str]
-    under: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -49,12 +36,14 @@ class Placed:
     room: float
 
 
-def table(sheet: Sheet, columns: Sequence[Column], rows: Sequence[Row]) -> None:
+def table(sheet: Sheet, columns: Sequence[str], rows: Sequence[Row]) -> None:
     """Write a table. Columns without any entry are left out and their room is shared."""
     kept = [n for n in range(len(columns)) if any(row.cells[n] for row in rows)]
     if not kept:
         return
-    places = _places(sheet, [columns[n] for n in kept])
+    places = _places(
+        sheet, [columns[n] for n in kept], wished(columns, rows, kept, sheet.paper.room)
+    )
     head_high = _height([place.title for place in places])
     _start(sheet, places, head_high, rows[0], kept)
     for number, row in enumerate(rows):
@@ -96,13 +85,12 @@ def _flow(
         _row(sheet, places, part, shaded, columns=len(heads), last=last)
 
 
-def _places(sheet: Sheet, columns: Sequence[Column]) -> list[Placed]:
+def _places(sheet: Sheet, titles: Sequence[str], wishes: Sequence[Wish]) -> list[Placed]:
     """Return the columns spread over the whole width."""
-    total, x, places = sum(column.share for column in columns), sheet.paper.left, []
-    for column in columns:
-        wide = sheet.paper.room * column.share / total
+    x, places = sheet.paper.left, []
+    for title, wide in zip(titles, shared(wishes, sheet.paper.room), strict=True):
         room = wide - 2 * PAD_X
-        places.append(Placed(lines_of(column.title, room, SIZE, bold=True), x + PAD_X, room))
+        places.append(Placed(lines_of(title, room, SIZE, bold=True), x + PAD_X, room))
         x += wide
     return places
 
