@@ -1,0 +1,86 @@
+"""The eye course: one eye's page with its chart, verdicts, visits and context."""
+
+import datetime as dt
+from dataclasses import dataclass
+from typing import Any
+
+from django.http import HttpRequest, HttpResponse
+from django.shortcuts import render
+from django.urls import path
+from django.utils import timezone
+from django.views.decorators.http import require_safe
+
+from clinic.chart import Panels
+from clinic.chart.figure import figure
+from clinic.chart.spoken import spoken
+from clinic.content import EyeReport
+from clinic.selectors.access import CLINICIAN, eye_for, site_for
+from clinic.selectors.report_content import both_eyes_chart, report_content
+
+
+@dataclass(frozen=True, slots=True)
+class NumberRow:
+    """One number of the chart, for the table under it."""
+
+    eye: str
+    day: dt.date
+    what: str
+    shown: str
+    method: str
+
+
+@require_safe
+def eye_course(request: HttpRequest, slug: str, code: str, side: str) -> HttpResponse:
+    """Show one eye; ``?eyes=both`` draws both on one time axis."""
+    here = site_for(request.user, slug)
+    patient = eye_for(here, code, side).patient
+    report = report_content(patient, printed_by=str(here.user), at=timezone.now())
+    eye = next(one for one in report.eyes if one.side_slug == side)
+    both = request.GET.get("eyes") == "both" and len(report.eyes) > 1
+    chart = both_eyes_chart(report) if both else eye.chart
+    context = {
+        "here": here,
+        "patient": patient,
+        "person": report.person,
+        "eye": eye,
+        "eyes": report.eyes,
+        "side_slug": side,
+        "limit_sets": report.limit_sets,
+        "both": both,
+        "figure": figure(chart),
+        "chart_words": spoken(chart),
+        "numbers": number_rows(chart),
+        "visits": sorted(eye.visits, key=lambda row: row.day, reverse=True),
+        "dated": dated_lists(eye),
+        "may_answer": here.may(CLINICIAN),
+    }
+    return render(request, "eye_course/eye_course.html", context)
+
+
+def number_rows(chart: Panels) -> list[NumberRow]:
+    """Return every drawn number and mark by date, newest first."""
+    words = {"R": "right", "L": "left"}
+    rows = [
+        NumberRow(words[series.side], point.day, panel.title, point.shown, point.method)
+        for panel in chart.panels
+        for series in panel.series
+        for point in series.points
+    ]
+    rows += [
+        NumberRow(words[lane.side], day, lane.kind, lane.name, "")
+        for lane in chart.lanes
+        for day in lane.days
+    ]
+    return sorted(rows, key=lambda row: (row.day, row.eye), reverse=True)
+
+
+def dated_lists(eye: EyeReport) -> list[tuple[str, Any]]:
+    """Return the dated lists of the page with their titles."""
+    return [
+        ("Treatment courses", eye.courses),
+        ("Eye events", eye.events),
+        ("Contacts", eye.contacts),
+    ]
+
+
+routes = [path("p/<code>/<str:side>/", eye_course, name="eye")]
