@@ -8,10 +8,12 @@ import numpy as np
 import pytest
 
 from tests.trends.eye_courses import visits_of
-from trends.limits import shipped
+from trends.limits import LimitSet, shipped
+from trends.regimens.pairs import Readings
 from trends.regimens.spoken import Spoken
 from trends.review import review
 from trends.ruling import columns_of
+from trends.verdict import DOES_NOT_APPLY
 from trends.visits import Visits
 
 AS_OF = dt.date(2030, 1, 1)
@@ -198,3 +200,76 @@ def test_a_row_of_another_regimen_is_no_row_of_this_one() -> None:
     one = spoken(fixed([0, "aflibercept"]))
     with pytest.raises(KeyError):
         one.index(1)
+
+
+def test_a_place_says_when_the_treatment_or_the_next_visit_is_not_recorded() -> None:
+    assert spoken(fixed([0, ""])).place(0) == "treatment not recorded"
+    weeks = [[week, *DRY, ""] for week in (0, 4, 8, 12, 16)]
+    assert spoken(extending(*weeks)).place(4) == "next visit not planned"
+    assert spoken(extending([0, *DRY[:4], "", ""])).place(0) == "treatment not recorded"
+
+
+def test_an_as_needed_eye_without_history_says_so_in_its_place() -> None:
+    v = with_history(as_needed([0, 60, 400, "aflibercept"]), treatments=None)
+    assert spoken(v).place(0) == "history not entered"
+    assert spoken(with_history(fixed([0, "none"]), treatments=None)).place(0) == (
+        "history not entered"
+    )
+
+
+def test_a_withheld_eye_that_missed_a_dose_stays_withheld_without_an_interval() -> None:
+    one = spoken(
+        as_needed(
+            [0, 60, 400, "aflibercept"],
+            [4, 60, 400, "aflibercept"],
+            [24, 60, 400, "none"],
+            [28, 60, 450, "none"],
+            [32, 60, 450, "aflibercept"],
+        )
+    )
+    assert [one.place(row) for row in (2, 3, 4)] == [
+        "withheld, next visit in 4 weeks",
+        "withheld",
+        "loading 3 of 6",
+    ]
+
+
+def test_a_lens_operation_between_makes_scans_and_letters_incomparable() -> None:
+    v = as_needed([0, 60, 400, "aflibercept"], [4, 60, 400, "aflibercept"], [24, 60, 400, "none"])
+    columns = dict(v.columns) | {"breaks": np.array([0, 0, 1], dtype=np.int32)}
+    one = spoken(replace(v, columns=columns))
+    assert one.readings()[-1] == "couldn't tell"
+    assert columns_of(int(one.missing[-1])) == ("oct_class", "acuity_chart")
+
+
+def test_one_scanner_assumed_lets_scans_of_unknown_class_be_compared() -> None:
+    rows = [[week, 60, 400, "", "aflibercept"] for week in (0, 4, 24)]
+    columns = ["week", "letters", "cst_um", "oct_class", "agent"]
+    v = visits_of({"sex": "f", "columns": columns, "visits": rows})
+    assert spoken(v).readings()[-1] == "couldn't tell"
+    assumed = replace(v, one_scanner_assumed=True)
+    assert spoken(assumed).readings()[-1].startswith("criteria to withhold met")
+
+
+def test_without_a_limit_set_or_its_table_no_regimen_speaks() -> None:
+    v = fixed([0, "aflibercept"])
+    assert review(v, None, AS_OF).regimens == {}
+    assert review(v, shipped("general"), AS_OF, only=["late"]).regimens == {}
+
+
+def test_a_set_that_does_not_name_the_cause_has_no_reading_for_it() -> None:
+    text = shipped("general").text
+    start = text.index("causes = [")
+    line = text[start : text.index("\n", start)]
+    narrow = LimitSet.from_toml(text.replace(line, 'causes = ["diabetic"]'))
+    case = {"regimen": "fixed_interval", "cause": "uveitic", "columns": ["week", "agent"]}
+    v = visits_of(case | {"visits": [[0, "aflibercept"]]})
+    (one,) = review(v, narrow, AS_OF).regimens.values()
+    assert one.readings() == [""]
+    assert one.outcome.tolist() == [DOES_NOT_APPLY]
+
+
+def test_columns_of_different_lengths_are_refused() -> None:
+    none, zero = np.zeros(1, dtype=bool), np.zeros(2, dtype=np.int64)
+    with pytest.raises(ValueError, match="different lengths"):
+        Readings(none, zero, zero, none, none, none, zero, zero, zero)

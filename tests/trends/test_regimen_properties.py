@@ -97,7 +97,7 @@ def said(rows: list[dict[str, str]]) -> dict[tuple[str, str, str], tuple[Any, ..
     return found
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=25, deadline=None)
 @given(histories())
 def test_a_later_visit_never_changes_an_earlier_reading(history: list[dict[str, Any]]) -> None:
     rows = rows_of(history, "A")
@@ -107,7 +107,7 @@ def test_a_later_visit_never_changes_an_earlier_reading(history: list[dict[str, 
         assert part == {key: whole[key] for key in part}
 
 
-@settings(max_examples=25, deadline=None)
+@settings(max_examples=15, deadline=None)
 @given(st.lists(histories(), min_size=2, max_size=6))
 def test_one_eye_alone_reads_the_same_as_among_many(many: list[list[dict[str, Any]]]) -> None:
     eyes = [rows_of(history, f"P{place}") for place, history in enumerate(many)]
@@ -118,7 +118,7 @@ def test_one_eye_alone_reads_the_same_as_among_many(many: list[list[dict[str, An
     assert together == alone
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=25, deadline=None)
 @given(histories())
 def test_every_row_has_a_reading_or_an_outcome_and_words(history: list[dict[str, Any]]) -> None:
     rows = rows_of(history, "A", sex="")
@@ -136,7 +136,7 @@ def test_every_row_has_a_reading_or_an_outcome_and_words(history: list[dict[str,
                 assert told.arithmetic
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=25, deadline=None)
 @given(histories(st.just("as_needed_stability")))
 def test_withholding_is_never_read_where_the_last_treatment_is_not_recorded(
     history: list[dict[str, Any]],

@@ -8,6 +8,7 @@ import numpy as np
 import pytest
 
 from tests.trends.eye_courses import cases, tidy_row
+from trends import words
 from trends.limits import shipped
 from trends.review import Reviewed, review
 from trends.rules import registry
@@ -91,3 +92,18 @@ def test_the_sentence_of_a_late_eye_states_dates_and_days() -> None:
     told = late.describe(found.visits, found.judged["late"], 0, shipped("general").rule("late"))
     assert told.sentence == "Right eye: due 1 March 2025, not seen since; 15 days past due"
     assert told.arithmetic == ["16 March 2025 - 1 March 2025 = 15 days; 14 days past due, exceeded"]
+
+
+def test_a_booking_is_named_beside_lateness_but_does_not_reset_it() -> None:
+    case = next(case for case in CASES if "16 March is 15 days" in case["name"])
+    v = visits_of(case)
+    booked = np.array([day_number(dt.date(2025, 4, 2))], dtype=np.int32)
+    by_clinic = np.array([words.ATTENDANCES.index("cancelled_by_clinic")], dtype=np.int32)
+    v = replace(v, columns=dict(v.columns) | {"booked_day": booked, "attendance": by_clinic})
+    found = review(v, shipped("general"), dt.date(2025, 3, 16))
+    late = registry.by_id()["late"]
+    told = late.describe(v, found.judged["late"], 0, shipped("general").rule("late"))
+    assert told.sentence == (
+        "Right eye: due 1 March 2025, not seen since; 15 days past due "
+        "(booked for 2 April 2025, cancelled by clinic)"
+    )
