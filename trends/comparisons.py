@@ -28,7 +28,7 @@ class Comparisons:
     @cached_property
     def cst_key(self) -> Ints:
         """Equal where two scans may be compared: class, and no breaking event between."""
-        unknown = len(words.OCT_CLASSES) if self.v.one_scanner_assumed else NONE
+        unknown = np.where(self.v.scanner_assumed == 1, len(words.OCT_CLASSES), NONE)
         klass = np.where(self.v.oct_class < 0, unknown, self.v.oct_class)
         return np.where(klass < 0, NONE, klass * 10_000 + self.v.breaks)
 

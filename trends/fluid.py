@@ -32,7 +32,7 @@ class Rise:
     @cached_property
     def classes(self) -> Ints:
         """Class codes: the four classes, then "assumed"; -1 where nothing can be said."""
-        assumed = CLASSES.index("assumed") if self.v.one_scanner_assumed else -1
+        assumed = np.where(self.v.scanner_assumed == 1, CLASSES.index("assumed"), -1)
         return np.where(self.v.oct_class < 0, assumed, self.v.oct_class)
 
     @cached_property
@@ -96,8 +96,7 @@ class Rise:
         given = self.c.cst_given
         not_comparable = given & self.c.cst.not_comparable
         out = np.where(no_class | not_comparable, bit("oct_class"), 0)
-        found: Ints = out | np.where(poor & given, bit("scan_quality"), 0)
-        return found
+        return np.asarray(out | np.where(poor & given, bit("scan_quality"), 0), dtype=np.int64)
 
 
 def rise(v: Visits, c: Comparisons, limits: Table) -> Rise:

@@ -116,6 +116,7 @@ def read(frame: "pd.DataFrame", *, one_scanner_assumed: bool = False) -> Visits:
     carried.check_rows(table, read_in, columns)
     if table.refused:
         raise FrameRefused(sorted(table.refused, key=lambda cell: cell.row))
+    columns["scanner_assumed"] = np.full(table.size, int(one_scanner_assumed))
     carried.fill(table.codes["person"], read_in["eye"], read_in["date"], columns)
     return sorted_visits(
         table.text_of("person"),
@@ -123,7 +124,6 @@ def read(frame: "pd.DataFrame", *, one_scanner_assumed: bool = False) -> Visits:
         read_in["date"],
         columns,
         lists,
-        one_scanner_assumed=one_scanner_assumed,
         as_entered={name: table.text_of(name) for name in ("acuity", "acuity_notation", "agent")},
     )
 

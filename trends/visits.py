@@ -73,6 +73,7 @@ COLUMNS: dict[str, int] = {
     "regimen": words.NOT_RECORDED,
     "course": words.NOT_RECORDED,
     "breaks": 0,
+    "scanner_assumed": 0,
     "decided": 0,
 }
 
@@ -98,7 +99,6 @@ class Visits:
     as_entered: Mapping[str, Sequence[Any]] = field(default_factory=dict)
     courses: Mapping[int, Mapping[str, Any]] = field(default_factory=dict)
     histories: Mapping[int, Mapping[str, Any]] = field(default_factory=dict)
-    one_scanner_assumed: bool = False
 
     def __len__(self) -> int:
         return int(self.day.size)

@@ -69,7 +69,7 @@ def assumptions(reviewed: Reviewed, row: int) -> list[str]:
     """Return what was assumed of a row, said in each working."""
     v = reviewed.visits
     out = []
-    if v.one_scanner_assumed:
+    if row >= 0 and int(v.scanner_assumed[row]):
         out.append("one scanner per eye, assumed at intake")
     if row >= 0 and int(v.status[row]) < 0:
         out.append("status not recorded: assumed in treatment")

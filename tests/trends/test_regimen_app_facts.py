@@ -247,7 +247,7 @@ def test_one_scanner_assumed_lets_scans_of_unknown_class_be_compared() -> None:
     columns = ["week", "letters", "cst_um", "oct_class", "agent"]
     v = visits_of({"sex": "f", "columns": columns, "visits": rows})
     assert spoken(v).readings()[-1] == "couldn't tell"
-    assumed = replace(v, one_scanner_assumed=True)
+    assumed = replace(v, columns={**v.columns, "scanner_assumed": np.ones(len(v), dtype=np.int32)})
     assert spoken(assumed).readings()[-1].startswith("criteria to withhold met")
 
 
