@@ -79,8 +79,8 @@ def _arithmetic(courses: AsNeededCourses, p: int) -> list[str]:
 
 
 def _success_line(courses: AsNeededCourses, p: int) -> str:
-    low, high = (int(limit[p]) for limit in courses.limit_um)
+    low, high = (int(limit[p]) for limit in courses.success.limit_um)
     limit = f"{low} µm" if low == high else f"{low} µm (women) or {high} µm (men), sex not recorded"
     enough = number_at(courses.number("success_letters"), p)
-    said = ANSWERS.get(int(courses.success[p]), "no")
+    said = ANSWERS.get(int(courses.success.told[p]), "no")
     return f"success (at least {enough} letters; CST below {limit if high else 'no limit'}): {said}"

@@ -6,9 +6,7 @@ from typing import Any
 
 import numpy as np
 
-from trends import words
 from trends.limits import Table
-from trends.regimens import truth
 from trends.regimens.courses import DAYS_IN_WEEK, NONE, Bools, Ints
 from trends.regimens.pairs import (
     Change,
@@ -21,7 +19,8 @@ from trends.regimens.pairs import (
 )
 from trends.regimens.readings import Said
 from trends.regimens.spoken import AtPositions
-from trends.regimens.truth import NO, UNKNOWN, YES, Truth
+from trends.regimens.success import Success
+from trends.regimens.truth import NO, YES
 from trends.regimens.visited import Visited
 from trends.regimens.withholding import (
     RECORDED_AFTER_BLANK,
@@ -62,6 +61,11 @@ class AsNeededCourses:
         return self.visited.parameter(self.limits, name)
 
     @cached_property
+    def success(self) -> Success:
+        """Success before week 24."""
+        return Success(self.visited, self.limits)
+
+    @cached_property
     def given(self) -> Given:
         """What was given at each visit."""
         w = self.visited
@@ -73,72 +77,8 @@ class AsNeededCourses:
             skipped=w.skipped,
             unscheduled=w.kind_is("unscheduled"),
             values_at=w.values_at,
-            success=self.success,
+            success=self.success.told,
         )
-
-    # Success before week 24 --------------------------------------------------------------------
-
-    @cached_property
-    def limit_um(self) -> tuple[Ints, Ints]:
-        """Lower and upper eligibility limit in µm; equal where the sex is known, 0 for none."""
-        at = self.visited.at
-        table = np.zeros((len(words.OCT_CLASSES) + 1, len(words.SEXES)), dtype=np.int64)
-        for place, name in enumerate(words.OCT_CLASSES):
-            for column, letter in enumerate(words.SEXES):
-                table[place, column] = self.limits.get(f"limit_um_{name}_{letter}") or 0
-        by_sex = table[self.visited.v.oct_class[at]]
-        sex = self.visited.v.sex[at]
-        known = np.take_along_axis(by_sex, np.maximum(sex, 0)[:, None], axis=1)[:, 0]
-        low = np.where(sex < 0, by_sex.min(axis=1), known)
-        high = np.where(sex < 0, by_sex.max(axis=1), known)
-        return low, high
-
-    @cached_property
-    def success_letters(self) -> Truth:
-        """Whether letters reach the limit of success."""
-        r = self.visited.readings
-        enough = r.letters[:-1] >= self.number("success_letters")
-        return truth.answer(r.has_letters[:-1], enough)
-
-    @cached_property
-    def success_cst(self) -> Truth:
-        """Whether CST is below the eligibility limit; a poor scan can't say so."""
-        r, (low, high) = self.visited.readings, self.limit_um
-        cst, poor = r.cst_um[:-1], r.poor[:-1]
-        below, above = (cst < low) & ~poor, cst >= high
-        return truth.answer(r.has_cst[:-1] & (high > 0) & (below | above), below)
-
-    @cached_property
-    def success(self) -> Truth:
-        """Success: letters and thickness (or either, where set); for diabetic edema only."""
-        joined = truth.where(
-            np.asarray(self.number("success_joined_by") == "and"),
-            truth.both(self.success_letters, self.success_cst),
-            truth.either(self.success_letters, self.success_cst),
-        )
-        cause = self.visited.v.cause[self.visited.at]
-        told = truth.where(cause < 0, np.minimum(joined, UNKNOWN), joined)
-        other = (cause >= 0) & (cause != words.CAUSES.index("diabetic"))
-        return truth.where(other, NO, told)
-
-    @cached_property
-    def success_lacks(self) -> Ints:
-        """Bits of the columns that keep success from an answer."""
-        r, w = self.visited.readings, self.visited
-        low, high = self.limit_um
-        unsure = self.success_cst == UNKNOWN
-        cst, given = r.cst_um[:-1], r.has_cst[:-1]
-        between = given & (high > 0) & (cst >= low) & (cst < high)
-        bits = np.where(
-            self.success_letters == UNKNOWN,
-            np.where(r.has_acuity[:-1], bit("acuity_chart"), bit("acuity")),
-            0,
-        )
-        bits |= np.where(unsure & ~given, bit("cst_um"), 0)
-        bits |= np.where(unsure & given & (high == 0), bit("oct_class"), 0)
-        bits |= np.where(unsure & between, bit("sex"), 0)
-        bits |= np.where(unsure & given & (cst < high) & r.poor[:-1], bit("scan_quality"), 0)
-        return np.asarray(bits | np.where(w.v.cause[w.at] < 0, bit("cause"), 0))
 
     # The walk ----------------------------------------------------------------------------------
 
@@ -185,7 +125,7 @@ class AsNeededCourses:
     def lacks(self) -> Ints:
         """Bits of the columns that keep the reading from an answer."""
         r, change, s = self.visited.readings, self.params.change, self.state
-        bits = np.where(self.early, self.success_lacks, 0)
+        bits = np.where(self.early, self.success.lacks, 0)
         for ref, now, counts in self.pairs:
             of_cst = cst_lacks(r, changed_cst(r, change, ref, now), ref, now)
             of_letters = letters_lack(r, changed_letters(r, change, ref, now), ref, now)
