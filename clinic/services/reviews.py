@@ -1,0 +1,305 @@
+"""Reviews: what the rules said of a visit, written only where something changed.
+
+A correction reviews that person's later visits of both eyes. A newer row supersedes; old rows keep
+the limit set, the engine version and the inputs digest that made them.
+"""
+
+import datetime as dt
+import hashlib
+from collections import defaultdict
+from collections.abc import Callable, Collection, Iterable, Mapping, Sequence
+from dataclasses import asdict, dataclass
+from typing import Any
+
+from django.db import transaction
+
+from clinic import adapters
+from clinic.models import Patient, Review, User
+from clinic.selectors.adopted import Adopted, adopted_for, of_cause
+from clinic.services import ledger
+from trends import ENGINE_VERSION, words
+from trends.limits import LimitSet
+from trends.regimens import registry as regimens
+from trends.review import review
+from trends.rules import registry as rules
+from trends.verdict import RANK_WORDS, RANKS
+from trends.wording import VerdictRow, set_names, verdict_rows
+
+KEPT = ("raised", "still", "could_not_tell")
+BATCH = 400
+NEVER_STORED = frozenset(
+    name for name, module in rules.by_id().items() if module.INFO.shape == "standing"
+)
+Wanted = Callable[[adapters.Place], bool]
+
+
+@dataclass(frozen=True)
+class Found:
+    """What the rules say of one row, ready to be stored."""
+
+    place: adapters.Place
+    inputs_digest: str
+    limits: LimitSet | None
+    outcomes: dict[str, str]
+    raised: list[dict[str, Any]]
+    reading: dict[str, Any]
+    top_rank: str
+
+    @property
+    def limit_set_digest(self) -> str:
+        """Digest of the set's text; empty for the floor alone."""
+        return self.limits.digest if self.limits is not None else ""
+
+
+def item_digest(row: VerdictRow) -> str:
+    """Return what an answer is bound to: the evidence of one verdict, not its wording."""
+    working = row.working or {}
+    evidence = [
+        row.rule,
+        row.outcome,
+        row.rank,
+        working.get("part"),
+        working.get("values"),
+        working.get("reference_date"),
+        working.get("reference_value"),
+    ]
+    return hashlib.sha256(ledger.canonical_text(evidence).encode()).hexdigest()
+
+
+def as_stored(row: VerdictRow) -> dict[str, Any]:
+    """Return a verdict row as it stands in a review."""
+    stored = asdict(row)
+    del stored["row"], stored["person"]
+    stored["missing"] = list(row.missing)
+    stored["digest"] = item_digest(row)
+    return stored
+
+
+def limits_by_cause(patient_site: Any) -> Callable[[str], LimitSet | None]:
+    """Return what gives the limit set in force for a cause at a site."""
+    adopted = adopted_for(patient_site)
+
+    def of(cause: str) -> LimitSet | None:
+        found: Adopted | None = of_cause(adopted, cause)
+        return found.limits if found else None
+
+    return of
+
+
+def judge(
+    patients: Sequence[Patient],
+    today: dt.date,
+    wanted: Wanted,
+    loaded: adapters.Loaded | None = None,
+) -> list[Found]:
+    """Run the rules on the wanted rows of some patients of one site; writes nothing."""
+    if not patients:
+        return []
+    loaded = loaded or adapters.load(patients)
+    visits = loaded.visits
+    if not len(visits):
+        return []
+    limits_of = limits_by_cause(patients[0].site)
+    chosen = [row for row, place in enumerate(loaded.places) if wanted(place)]
+    groups: dict[str, tuple[LimitSet | None, list[int]]] = {}
+    for row in chosen:
+        code = int(visits.cause[row])
+        limits = limits_of(words.CAUSES[code] if code >= 0 else "")
+        key = limits.digest if limits is not None else ""
+        groups.setdefault(key, (limits, []))[1].append(row)
+    found: list[Found] = []
+    for limits, rows in groups.values():
+        found += _judge_with(loaded, limits, rows, today)
+    return found
+
+
+def _judge_with(
+    loaded: adapters.Loaded, limits: LimitSet | None, rows: list[int], today: dt.date
+) -> list[Found]:
+    reviewed = review(loaded.visits, limits, today, only=stored_rules())
+    by_row: dict[int, list[VerdictRow]] = defaultdict(list)
+    for one in verdict_rows(reviewed, rows, standing=False):
+        by_row[one.row].append(one)
+    fellows = _fellow_rows(reviewed, loaded, rows)
+    return [
+        _found(loaded, reviewed, limits, row, by_row[row] + fellows.get(row, [])) for row in rows
+    ]
+
+
+def stored_rules() -> set[str]:
+    """Return every rule and regimen whose outcome is stored; standing ones never are."""
+    return {*rules.by_id(), *regimens.by_id()} - NEVER_STORED
+
+
+def _fellow_rows(
+    reviewed: Any, loaded: adapters.Loaded, rows: list[int]
+) -> dict[int, list[VerdictRow]]:
+    """Return fellow alarms without a row of their own, by the row of the alarmed eye."""
+    from trends.wording import fellow_rows
+
+    judged = reviewed.judged.get("alarm_symptoms")
+    found: dict[int, list[VerdictRow]] = defaultdict(list)
+    pairs = judged.extra.get("fellow_of", []) if judged is not None else []
+    for (alarm, _eye), one in zip(pairs, fellow_rows(reviewed), strict=True):
+        if alarm in rows:
+            found[alarm].append(one)
+    return found
+
+
+def _found(
+    loaded: adapters.Loaded,
+    reviewed: Any,
+    limits: LimitSet | None,
+    row: int,
+    verdicts: Sequence[VerdictRow],
+) -> Found:
+    own = [one for one in verdicts if not one.reading or one.rule not in regimens.by_id()]
+    readings = [one for one in verdicts if one.rule in regimens.by_id() and one.reading]
+    top = max((RANKS.get(one.rank, 0) for one in own), default=0)
+    return Found(
+        place=loaded.places[row],
+        inputs_digest=loaded.digests[row],
+        limits=limits,
+        outcomes={one.rule: one.outcome for one in own if one.row == row and one.outcome},
+        raised=[as_stored(one) for one in own if one.outcome in KEPT],
+        reading=_reading(reviewed, row, readings),
+        top_rank=RANK_WORDS[top],
+    )
+
+
+def _reading(reviewed: Any, row: int, readings: Sequence[VerdictRow]) -> dict[str, Any]:
+    if not readings:
+        return {}
+    one = readings[0]
+    spoken = reviewed.regimens[one.rule]
+    at = spoken.index(row)
+    weeks = int(spoken.interval_weeks[at])
+    return {
+        "regimen": one.rule,
+        "reading": one.reading,
+        "place": spoken.place(row),
+        "interval_weeks": weeks if weeks >= 0 else None,
+        "sentence": one.sentence,
+        "missing": list(one.missing),
+        "working": one.working,
+    }
+
+
+def newest_reviews(patients: Collection[int]) -> dict[tuple[int, int], Review]:
+    """Return the newest review of each (visit, eye) of some patients."""
+    ids = list(patients)
+    found: dict[tuple[int, int], Review] = {}
+    for start in range(0, len(ids), BATCH):
+        rows = Review.objects.filter(visit__patient_id__in=ids[start : start + BATCH])
+        for row in rows.order_by("seq").defer("raised", "reading", "outcomes"):
+            found[row.visit_id, row.eye_id] = row
+    return found
+
+
+def changed(found: Iterable[Found], newest: Mapping[tuple[int, int], Review]) -> list[Found]:
+    """Return what differs from the newest stored review in inputs, limits or engine."""
+    out = []
+    for one in found:
+        last = newest.get((one.place.visit_id, one.place.eye_id))
+        same = last is not None and (
+            last.inputs_digest == one.inputs_digest
+            and last.limit_set_digest == one.limit_set_digest
+            and last.engine_version == ENGINE_VERSION
+        )
+        if not same:
+            out.append(one)
+    return out
+
+
+def rows_of(
+    found: Iterable[Found],
+    newest: Mapping[tuple[int, int], Review],
+    *,
+    by: User,
+    at: dt.datetime,
+    why: str,
+) -> list[Review]:
+    """Return unsaved reviews, numbered after the newest ones."""
+    rows = []
+    for one in found:
+        last = newest.get((one.place.visit_id, one.place.eye_id))
+        name, version = set_names(one.limits)
+        rows.append(
+            Review(
+                visit_id=one.place.visit_id,
+                eye_id=one.place.eye_id,
+                seq=(last.seq if last else 0) + 1,
+                limit_set_digest=one.limit_set_digest,
+                limit_set_name=f"{name} {version}",
+                engine_version=ENGINE_VERSION,
+                inputs_digest=one.inputs_digest,
+                outcomes=one.outcomes,
+                raised=one.raised,
+                reading=one.reading,
+                top_rank=one.top_rank,
+                why=why,
+                at=at.replace(microsecond=0),
+                by=by,
+            )
+        )
+    return rows
+
+
+def review_person(
+    *,
+    patient: Patient,
+    from_day: dt.date,
+    by: User,
+    at: dt.datetime,
+    today: dt.date,
+    why: str,
+) -> list[Review]:
+    """Review a person's visits of both eyes from a day on; inside the caller's transaction."""
+    found = judge([patient], max(today, from_day), lambda place: place.day >= from_day)
+    newest = newest_reviews([patient.pk])
+    rows = rows_of(changed(found, newest), newest, by=by, at=at, why=why)
+    return Review.objects.bulk_create(rows)
+
+
+def review_latest(
+    *, patients: Sequence[Patient], by: User, at: dt.datetime, today: dt.date, why: str
+) -> list[Review]:
+    """Review the newest visit of each eye: after intake, demo or adoption.
+
+    Computed outside the transaction, written in one short one.
+    """
+    rows: list[Review] = []
+    for start in range(0, len(patients), BATCH):
+        some = patients[start : start + BATCH]
+        loaded = adapters.load(some)
+        last: dict[int, dt.date] = {}
+        for place in loaded.places:
+            last[place.eye_id] = max(place.day, last.get(place.eye_id, place.day))
+        wanted = _is_last(last)
+        newest = newest_reviews([patient.pk for patient in some])
+        found = judge(some, today, wanted, loaded)
+        rows += rows_of(changed(found, newest), newest, by=by, at=at, why=why)
+    with transaction.atomic():
+        Review.objects.bulk_create(rows, batch_size=500)
+    return rows
+
+
+def _is_last(last: Mapping[int, dt.date]) -> Wanted:
+    return lambda place: last[place.eye_id] == place.day
+
+
+def review_shown(*, patient: Patient, by: User, at: dt.datetime, today: dt.date) -> list[Review]:
+    """Review what of a person was never reviewed: back-filled history, when it is viewed."""
+    newest = newest_reviews([patient.pk])
+    loaded = adapters.load([patient])
+    lacking = {
+        (place.visit_id, place.eye_id)
+        for place in loaded.places
+        if (place.visit_id, place.eye_id) not in newest
+    }
+    if not lacking:
+        return []
+    found = judge([patient], today, lambda place: (place.visit_id, place.eye_id) in lacking, loaded)
+    rows = rows_of(found, newest, by=by, at=at, why="by today's set")
+    with transaction.atomic():
+        return Review.objects.bulk_create(rows)
