@@ -9,6 +9,7 @@ SIZE = 6.8
 PAD_X = 3.0
 SLACK = 0.5
 MOST_SHARE = 0.25
+MOST_MORE = 45.0
 Wish = tuple[float, float]
 
 
@@ -48,7 +49,7 @@ def shared(wishes: Sequence[Wish], room: float) -> list[float]:
     Where even the words don't fit, all columns shrink alike and words are broken.
     """
     least = [word + 2 * PAD_X + SLACK for word, _ in wishes]
-    more = [max(0.0, line - word) for word, line in wishes]
+    more = [min(MOST_MORE, max(0.0, line - word)) for word, line in wishes]
     left = room - sum(least)
     if left < 0:
         return [wide * room / sum(least) for wide in least]

@@ -1,12 +1,15 @@
 """One eye of the trend report: facts, chart, raised with working, visits, decisions, the rest."""
 
+from dataclasses import dataclass
+
 from clinic.chart.spoken import spoken
 from clinic.content import Dated, EyeReport, VisitRow
 from clinic.reports.chart_drawing import ChartDrawing
+from clinic.reports.column_widths import Row
 from clinic.reports.fonts import STAYS
 from clinic.reports.paper import QUIET
 from clinic.reports.sheet import Sheet
-from clinic.reports.table import Row, table
+from clinic.reports.table import table
 from clinic.reports.words import day_words, joined, rules
 from clinic.reports.working import missing, verdict
 
@@ -27,14 +30,23 @@ VISITS = (
 ROOM_FOR_AN_EYE = 480.0
 
 
-def eye_section(sheet: Sheet, eye: EyeReport, first: bool, gutter: float = 0.0) -> None:
+@dataclass(frozen=True, slots=True)
+class Around:
+    """What an eye shares with the rest of the report: numbered sources, the chart's left room."""
+
+    sources: tuple[str, ...]
+    gutter: float
+    first: bool
+
+
+def eye_section(sheet: Sheet, eye: EyeReport, around: Around) -> None:
     """Write everything of one eye; the second eye begins on a new page unless much is left."""
-    if not first and sheet.left_over < ROOM_FOR_AN_EYE:
+    if not around.first and sheet.left_over < ROOM_FOR_AN_EYE:
         sheet.turn()
     sheet.heading(2, eye.side_words, keep=120)
     _facts(sheet, eye)
-    _chart(sheet, eye, gutter)
-    _raised(sheet, eye)
+    _chart(sheet, eye, around.gutter)
+    _raised(sheet, eye, around.sources)
     _could_not_tell(sheet, eye)
     _visits(sheet, eye)
     _decisions(sheet, eye)
@@ -63,17 +75,17 @@ def _chart(sheet: Sheet, eye: EyeReport, gutter: float) -> None:
         sheet.text(note, size=6.6, tone=QUIET)
 
 
-def _raised(sheet: Sheet, eye: EyeReport) -> None:
+def _raised(sheet: Sheet, eye: EyeReport, sources: tuple[str, ...]) -> None:
     """Write what is raised and what still stands, each with its working."""
     sheet.heading(3, "Raised, with working")
     if not eye.raised:
         sheet.text("Nothing is raised. That is no promise: see the rules that couldn't tell.")
     for one in eye.raised:
-        verdict(sheet, one)
+        verdict(sheet, one, sources)
     if eye.still:
         sheet.heading(3, "Still")
         for one in eye.still:
-            verdict(sheet, one)
+            verdict(sheet, one, sources)
 
 
 def _could_not_tell(sheet: Sheet, eye: EyeReport) -> None:

@@ -5,7 +5,7 @@ from collections.abc import Sequence
 from clinic.content import EyeReport, PatientReport
 from clinic.reports.chart_drawing import gutter_for
 from clinic.reports.document import About, Part, written_pdf
-from clinic.reports.eye_section import eye_section
+from clinic.reports.eye_section import Around, eye_section
 from clinic.reports.paper import QUIET, Paper, paper_named
 from clinic.reports.sheet import Sheet
 from clinic.reports.words import day_words, joined, moment_words, rules
@@ -36,7 +36,7 @@ def _part(report: PatientReport, paper: Paper) -> Part:
     _opening(sheet, report)
     gutter = gutter_for(eye.chart for eye in report.eyes)
     for eye in report.eyes:
-        eye_section(sheet, eye, first=eye is report.eyes[0], gutter=gutter)
+        eye_section(sheet, eye, Around(report.sources, gutter, first=eye is report.eyes[0]))
     _closing(sheet, report)
     return Part(
         sheet,
@@ -62,9 +62,9 @@ def _opening(sheet: Sheet, report: PatientReport) -> None:
     covered = "No dates yet"
     if report.dates_from and report.dates_to:
         covered = f"Covers {day_words(report.dates_from)} to {day_words(report.dates_to)}"
-    limits = "; ".join(report.limit_sets) or "No limit set adopted: only the floor rules run"
+    limits = "; ".join(report.limit_sets) or "no limit set adopted: only the floor rules run"
     sheet.text(covered + ".", size=8, tone=QUIET)
-    sheet.text(f"Limits: {limits}.", size=8, tone=QUIET)
+    sheet.text(f"{limits[0].upper()}{limits[1:]}.", size=8, tone=QUIET)
     for eye in report.eyes:
         sheet.gap(3)
         sheet.text(_at_a_glance(eye), size=9, bold=bool(eye.raised))
@@ -87,4 +87,4 @@ def _closing(sheet: Sheet, report: PatientReport) -> None:
     if report.sources:
         sheet.heading(2, "Sources")
         for number, source in enumerate(report.sources, start=1):
-            sheet.pair(f"{number}", [source], size=7)
+            sheet.pair(f"Source {number}", [source], size=7)

@@ -6,7 +6,7 @@ from clinic.reports.sheet import Sheet
 from clinic.reports.words import day_words, joined
 
 
-def verdict(sheet: Sheet, one: VerdictText) -> None:
+def verdict(sheet: Sheet, one: VerdictText, sources: tuple[str, ...]) -> None:
     """Write one verdict: rank and fact first, then every part that has something to say."""
     sheet.gap(5)
     sheet.need(40)
@@ -21,8 +21,15 @@ def verdict(sheet: Sheet, one: VerdictText) -> None:
         sheet.pair("At once", [one.emergency_text])
     sheet.pair("May be weighed", ["; ".join(one.options)])
     sheet.pair("Not for", ["; ".join(one.not_for)])
-    sheet.pair("Source", one.sources)
+    sheet.pair("Source", [numbered(one.sources, sources)])
     sheet.pair("Answer", [one.answer or "open"])
+
+
+def numbered(used: tuple[str, ...], listed: tuple[str, ...]) -> str:
+    """Return the numbers of the sources in the list at the end; an unlisted one in full."""
+    numbers = [f"{listed.index(source) + 1}" for source in used if source in listed]
+    told = f"{', '.join(numbers)} in the list at the end" if numbers else ""
+    return joined((told, *(source for source in used if source not in listed)), "; ")
 
 
 def value_words(value: ValueUsed) -> str:

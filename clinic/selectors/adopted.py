@@ -35,7 +35,7 @@ def adopted_for(site: Site) -> dict[str, Adopted]:
         for_cause = f" for {cause.replace('_', ' ')}" if cause else ""
         day = f"{one.at.day} {one.at:%b %Y}"
         found[cause] = Adopted(
-            parsed(text.text), f"{text}{for_cause}, adopted {day}, confirmed by {one.by}"
+            parsed(text.text), f"limit set {text}{for_cause}, adopted {day}, confirmed by {one.by}"
         )
     return found
 

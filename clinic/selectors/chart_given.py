@@ -26,16 +26,17 @@ class EyeRows:
 
     side: str
     sex: str
+    cause: str
     measured: Sequence[tuple[Visit, Measured]]
     treated: Sequence[tuple[Visit, Treated]]
     events: Sequence[EyeEvent]
     gap_between_scanners: bool = False
 
 
-def eye_given(rows: EyeRows, limits: LimitSet | None) -> EyeGiven:
-    """Return what is drawn of one eye; without a limit set neither bars nor limits are drawn."""
+def eye_given(rows: EyeRows, limits: LimitSet | None) -> tuple[EyeGiven, tuple[str, ...]]:
+    """Return what is drawn of one eye, and the notes that go with it."""
     errors = Errors(limits)
-    return EyeGiven(
+    given = EyeGiven(
         side=rows.side,
         cst=tuple(_scans(rows, errors)),
         letters=tuple(_acuities(rows, errors)),
@@ -50,9 +51,11 @@ def eye_given(rows: EyeRows, limits: LimitSet | None) -> EyeGiven:
         limits=limit_pieces(
             [(visit.day, row.oct_class) for visit, row in rows.measured if row.cst_um is not None],
             rows.sex,
+            rows.cause,
             limits,
         ),
     )
+    return given, errors.notes()
 
 
 def _scans(rows: EyeRows, errors: Errors) -> Iterable[Reading]:
@@ -90,7 +93,7 @@ def _acuities(rows: EyeRows, errors: Errors) -> Iterable[Reading]:
             letters_text(row) or row.acuity,
             f"{read.scale}/{row.acuity_correction}",
             acuity_text(row).replace("\n", ", "),
-            errors.letters() if read.five_letters else None,
+            errors.published("letters", read.scale) if read.five_letters else None,
             off_chart="" if on_chart else off_chart_grade(row.acuity),
         )
 
@@ -110,7 +113,7 @@ def _pressures(rows: EyeRows, errors: Errors) -> Iterable[Reading]:
             iop_text(row.iop_tenths),
             row.iop_method or "not recorded",
             row.iop_method.replace("_", "-"),
-            errors.iop_mmhg(row.iop_method),
+            errors.published("iop", row.iop_method),
         )
 
 

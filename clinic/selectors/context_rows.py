@@ -3,6 +3,7 @@
 import datetime as dt
 from collections.abc import Sequence
 
+from clinic.chart.spoken import day_words
 from clinic.content import ContextRow
 from clinic.models import Measured, Treated
 from clinic.selectors.eye_log import EyeLog
@@ -23,7 +24,7 @@ def context_rows(log: EyeLog, today: dt.date) -> tuple[ContextRow, ...]:
     for day, words in given:
         last[words] = day
     rows = [
-        ContextRow(f"Since last {words}", _weeks((today - day).days), f"given {day.isoformat()}")
+        ContextRow(f"Since last {words}", _weeks((today - day).days), f"given {day_words(day)}")
         for words, day in sorted(last.items(), key=lambda one: one[1], reverse=True)
     ]
     recent = sum(1 for day, _ in given if today - YEAR < day <= today)

@@ -2,6 +2,7 @@
 
 from collections.abc import Iterable, Mapping
 
+from clinic.chart.spoken import day_words
 from clinic.content import AnswerRow, Dated, DecisionRow, VisitRow
 from clinic.models import Answer, Course, EyeEvent, History, Measured, MoreAcuity, Patient
 from clinic.selectors.change_words import changes
@@ -38,11 +39,9 @@ def history_text(history: History | None) -> str:
     if history.new_eye:
         return "treatment starts here"
     told = [
-        f"diagnosed {history.diagnosed_on.isoformat()}" if history.diagnosed_on else "",
+        f"diagnosed {day_words(history.diagnosed_on)}" if history.diagnosed_on else "",
         _counted(history),
-        f"last treated {history.last_treatment_on.isoformat()}"
-        if history.last_treatment_on
-        else "",
+        f"last treated {day_words(history.last_treatment_on)}" if history.last_treatment_on else "",
         f"interval {history.interval_weeks} weeks" if history.interval_weeks else "",
         _yes_no("loading done", history.loading_done),
         _yes_no("steroid before", history.steroid_ever),
@@ -121,7 +120,7 @@ def decision_rows(log: EyeLog) -> tuple[DecisionRow, ...]:
 
 def answer_text(answer: Answer) -> str:
     """Return an answer in words, with the day to look again."""
-    until = f" {answer.look_again_on.isoformat()}" if answer.look_again_on else ""
+    until = f" {day_words(answer.look_again_on)}" if answer.look_again_on else ""
     return f"{answer.get_answer_display()} on{until}" if until else answer.get_answer_display()
 
 
@@ -170,7 +169,7 @@ def contact_lines(log: EyeLog) -> tuple[Dated, ...]:
             "; ".join(
                 part
                 for part in (
-                    f"since {row.symptoms_onset.isoformat()}" if row.symptoms_onset else "",
+                    f"since {day_words(row.symptoms_onset)}" if row.symptoms_onset else "",
                     f"told {row.told_whom}" if row.told_whom else "",
                     f"taken by {row.by}",
                 )

@@ -24,18 +24,19 @@ from clinic.selectors.eye_words import (
 )
 
 SEAL_GROUPS = 3
+Drawn = tuple[EyeGiven, tuple[str, ...]]
 
 
 def report_content(patient: Patient, *, printed_by: str, at: dt.datetime) -> PatientReport:
     """Return the report of one person as of a moment, in the site's own time."""
     printed_at = at.astimezone(ZoneInfo(patient.site.time_zone))
     logs = eye_logs(patient)
-    verdicts = verdicts_for(patient, logs)
-    given = {log.eye.side: given_of(patient, log, verdicts[log.eye.pk]) for log in logs}
-    days = [day for one in given.values() for day in one.days()]
+    verdicts = verdicts_for(patient, logs, printed_at.date())
+    drawn = {log.eye.pk: given_of(patient, log, verdicts[log.eye.pk]) for log in logs}
+    days = [day for given, _ in drawn.values() for day in given.days()]
     span = (min(days), max(days)) if days else None
     eyes = tuple(
-        eye_report(log, verdicts[log.eye.pk], given[log.eye.side], span, printed_at.date())
+        eye_report(log, verdicts[log.eye.pk], drawn[log.eye.pk], span, printed_at.date())
         for log in logs
     )
     return PatientReport(
@@ -61,11 +62,12 @@ def both_eyes_chart(report: PatientReport) -> Panels:
     return panels_for(*(eye.given for eye in report.eyes), today=report.printed_at.date())
 
 
-def given_of(patient: Patient, log: EyeLog, verdicts: EyeVerdicts) -> EyeGiven:
-    """Return what is drawn of one eye."""
+def given_of(patient: Patient, log: EyeLog, verdicts: EyeVerdicts) -> Drawn:
+    """Return what is drawn of one eye, with the notes of its chart."""
     rows = EyeRows(
         side=log.eye.side,
         sex=patient.sex,
+        cause=log.state.cause if log.state else "",
         measured=log.pairs("measured"),
         treated=log.pairs("treated"),
         events=log.events,
@@ -77,12 +79,12 @@ def given_of(patient: Patient, log: EyeLog, verdicts: EyeVerdicts) -> EyeGiven:
 def eye_report(
     log: EyeLog,
     verdicts: EyeVerdicts,
-    given: EyeGiven,
+    drawn: Drawn,
     span: tuple[dt.date, dt.date] | None,
     today: dt.date,
 ) -> EyeReport:
     """Return everything that is shown of one eye."""
-    state, now = log.state, log.now
+    state, now, (given, notes) = log.state, log.now, drawn
     return EyeReport(
         side=log.eye.side,
         side_words=log.eye.get_side_display().capitalize(),
@@ -95,7 +97,7 @@ def eye_report(
         reading=verdicts.reading,
         reading_from=verdicts.reading_from,
         history=history_text(log.history),
-        chart_notes=verdicts.chart_notes,
+        chart_notes=notes,
         raised=verdicts.raised,
         still=verdicts.still,
         could_not_tell=verdicts.could_not_tell,

@@ -99,7 +99,7 @@ def verdict_text(
         values=tuple(value_used(value) for value in working.get("values") or ()),
         arithmetic=_words(working.get("arithmetic")),
         version=f"{row['rule']} {row.get('rule_version', '')}".strip(),
-        limit=_limit(rule),
+        limit=_limit(rule, has_words=bool(adopted)),
         adopted=adopted,
         sources=tuple(source_text(source) for source in working.get("source") or ()),
         noise=str(working.get("noise") or ""),
@@ -114,13 +114,15 @@ def verdict_text(
     )
 
 
-def _limit(rule: Row) -> str:
-    """Return the limit with the name and version of its set."""
+def _limit(rule: Row, has_words: bool) -> str:
+    """Return the limit; with name and version of its set where the adoption doesn't name it."""
     limit = str(rule.get("limit") or "")
     named = " ".join(
         str(part) for part in (rule.get("limit_set"), rule.get("limit_set_version")) if part
     )
-    return ", ".join(part for part in (limit, f"limit set {named}" if named else "") if part)
+    if has_words or not named:
+        return limit
+    return ", ".join(part for part in (limit, named) if part)
 
 
 def _words(lines: Iterable[Any] | None) -> Words:

@@ -1,10 +1,12 @@
 """What stands in one stored record, in words: the same on the eye course and on paper."""
 
+from clinic.chart.spoken import day_words
 from clinic.models import Decided, Measured, MoreAcuity, NextStep, Treated
 from trends.measures import acuity as acuities
 from trends.measures.pressure import shown
 
 UG_A_MG = 1000
+STAYS = "\N{NO-BREAK SPACE}"
 GRADES = {"yes": "yes", "no": "no", "unsure": "unsure", "not_graded": "not graded"}
 
 
@@ -24,21 +26,19 @@ def listed(codes: str) -> str:
 
 def dose_text(dose_ug: int | None) -> str:
     """Return a dose in mg, as few decimals as it has: 500 µg is ``0.5 mg``."""
-    return "" if dose_ug is None else f"{dose_ug / UG_A_MG:g}\N{NO-BREAK SPACE}mg"
+    return "" if dose_ug is None else f"{dose_ug / UG_A_MG:g}{STAYS}mg"
 
 
 def iop_text(tenths: int | None) -> str:
     """Return a pressure in mmHg."""
-    return "" if tenths is None else f"{shown(tenths)}\N{NO-BREAK SPACE}mmHg"
+    return "" if tenths is None else f"{shown(tenths)}{STAYS}mmHg"
 
 
 def cst_text(row: Measured) -> str:
     """Return the thickness, and that the scan is poor."""
     if row.cst_um is None:
         return "poor scan" if row.scan_quality == "poor" else ""
-    return f"{row.cst_um}\N{NO-BREAK SPACE}µm" + (
-        ", poor scan" if row.scan_quality == "poor" else ""
-    )
+    return f"{row.cst_um}{STAYS}µm" + (", poor scan" if row.scan_quality == "poor" else "")
 
 
 def method_text(row: Measured) -> str:
@@ -51,9 +51,9 @@ def method_text(row: Measured) -> str:
 def fluid_text(row: Measured) -> str:
     """Return IRF and SRF as graded, a line each, or one line where both say the same."""
     if row.irf and row.irf == row.srf:
-        return f"IRF, SRF {GRADES.get(row.irf, row.irf)}"
+        return f"IRF, SRF{STAYS}{GRADES.get(row.irf, row.irf)}"
     graded = [("IRF", row.irf), ("SRF", row.srf)]
-    return "\n".join(f"{name} {GRADES.get(grade, grade)}" for name, grade in graded if grade)
+    return "\n".join(f"{name}{STAYS}{GRADES.get(grade, grade)}" for name, grade in graded if grade)
 
 
 def letters_text(row: Measured) -> str:
@@ -79,7 +79,7 @@ def acuity_text(row: Measured | MoreAcuity) -> str:
     notation = told.get(row.acuity_notation, "")
     chart = worded(row.acuity_chart).replace("etdrs", "ETDRS")
     how = ", ".join(part for part in (chart, worded(row.acuity_correction)) if part)
-    typed = " ".join(part for part in (row.acuity, notation) if part)
+    typed = STAYS.join(part for part in (row.acuity, notation) if part)
     return "\n".join(part for part in (typed, how) if part)
 
 
@@ -96,7 +96,7 @@ def pressures_text(row: Measured) -> str:
 
 def symptoms_text(row: Measured) -> str:
     """Return the symptoms told at the visit; none is told too, a blank is not none."""
-    onset = f" since {row.symptoms_onset.isoformat()}" if row.symptoms_onset else ""
+    onset = f" since {day_words(row.symptoms_onset)}" if row.symptoms_onset else ""
     return f"{listed(row.symptoms)}{onset}" if row.symptoms else ""
 
 
@@ -149,7 +149,7 @@ def decided_text(row: Decided) -> str:
 def due_text(row: NextStep) -> str:
     """Return when the next visit is due and what is planned then, a line each."""
     weeks = f"in {row.due_weeks} weeks" if row.due_weeks else ""
-    day = f"{row.due_day.day} {row.due_day:%b %Y}" if row.due_day else ""
+    day = day_words(row.due_day) if row.due_day else ""
     planned = "check only" if row.check_only else row.planned_agent
     dose = dose_text(row.planned_dose_ug) if planned == row.planned_agent else ""
     return "\n".join(part for part in (day, weeks, f"{planned} {dose}".strip()) if part)

@@ -203,7 +203,7 @@ def report(code: str = "K7QX3M9TAB", visits: int = 18, note: str = "") -> c.Pati
         "born 1957 · female",
         START,
         dt.date(2025, 10, 13),
-        ("general 1.0.0 (diabetic), adopted 1 Feb 2026 by Demo Clinician",),
+        ("limit set general 1.0.0 (diabetic), adopted 1 Feb 2026 by Demo Clinician",),
         "5f2a 91c0 7be4",
         ("Invented A and B. Repeatability. 2019;1:1-9.", "Invented C. Limits. 2020;2:2-8."),
     )

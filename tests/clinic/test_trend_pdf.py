@@ -59,7 +59,7 @@ def test_it_says_whose_it_is_what_it_covers_who_printed_and_by_which_limits(made
         "Harbour eye clinic",
         "Covers 5 Feb 2024 to 13 Oct 2025",
         "printed 4 Mar 2026 16:05 by Demo Recorder",
-        "general 1.0.0 (diabetic), adopted 1 Feb 2026 by Demo Clinician",
+        "Limit set general 1.0.0 (diabetic), adopted 1 Feb 2026 by Demo Clinician",
         "ledger seal 5f2a 91c0 7be4",
         "Ebbline 0.1.0",
     ):
