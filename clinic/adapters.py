@@ -7,7 +7,7 @@ Withdrawn records are blank. Status, cause and course are those in force on the 
 import datetime as dt
 import hashlib
 from collections import defaultdict
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from typing import Any
 
@@ -21,6 +21,7 @@ from clinic.models import (
     EyeEvent,
     EyeState,
     History,
+    IntakeFile,
     Measured,
     MoreTreatment,
     NextStep,
@@ -42,13 +43,14 @@ BATCH = 400
 
 @dataclass(frozen=True)
 class Place:
-    """The visit and eye behind one row."""
+    """The visit and eye behind one row; ``assumed`` is what intake took for granted of it."""
 
     visit_id: int
     eye_id: int
     patient_id: int
     day: dt.date
     kind: str
+    assumed: tuple[str, ...] = ()
 
 
 @dataclass
@@ -116,6 +118,7 @@ class Records:
     courses: dict[int, list[Course]]
     events: dict[int, list[tuple[dt.date, int]]]
     histories: dict[int, History]
+    assumed: dict[int, tuple[str, ...]] = field(default_factory=dict)
 
 
 def _by_eye(rows: Iterable[Any]) -> dict[int, list[Any]]:
@@ -135,7 +138,7 @@ def read(patients: Sequence[Patient]) -> Records:
     for start in range(0, len(ids), BATCH):
         some = ids[start : start + BATCH]
         visits += Visit.objects.filter(patient_id__in=some).values(
-            "pk", "patient_id", "day", "kind", "entry"
+            "pk", "patient_id", "day", "kind", "entry", "from_intake_id"
         )
         for eye in Eye.objects.filter(patient_id__in=some).values("pk", "patient_id", "side"):
             eyes[eye["pk"]] = eye
@@ -168,7 +171,14 @@ def read(patients: Sequence[Patient]) -> Records:
         histories={
             history.eye_id: history for history in histories if history.change != "withdrawn"
         },
+        assumed=_assumed({visit["from_intake_id"] for visit in visits} - {None}),
     )
+
+
+def _assumed(files: Collection[int]) -> dict[int, tuple[str, ...]]:
+    """Return what each intake file took for granted, by the file's key."""
+    rows = IntakeFile.objects.filter(pk__in=files).values_list("pk", "assumed") if files else ()
+    return {pk: tuple(sentences) for pk, sentences in rows}
 
 
 def load(patients: Sequence[Patient]) -> Loaded:
@@ -328,7 +338,7 @@ def _columns(
         lists,
         courses=_courses(records),
     )
-    places = [_place(*rows[row]) for row in visits.source_row.tolist()]
+    places = [_place(records, *rows[row]) for row in visits.source_row.tolist()]
     visits = replace(
         visits,
         as_entered=_entered(records, [(v["pk"], e["pk"]) for v, e in rows]),
@@ -337,8 +347,15 @@ def _columns(
     return Loaded(visits, places, digests(visits))
 
 
-def _place(visit: dict[str, Any], eye: dict[str, Any]) -> Place:
-    return Place(visit["pk"], eye["pk"], visit["patient_id"], visit["day"], visit["kind"])
+def _place(records: Records, visit: dict[str, Any], eye: dict[str, Any]) -> Place:
+    return Place(
+        visit["pk"],
+        eye["pk"],
+        visit["patient_id"],
+        visit["day"],
+        visit["kind"],
+        records.assumed.get(visit["from_intake_id"], ()),
+    )
 
 
 def _entered(records: Records, keys: Sequence[tuple[int, int]]) -> dict[str, list[str]]:
@@ -403,6 +420,7 @@ def digests(visits: Visits) -> list[str]:
     """Return for each row a digest of all this person's inputs up to that day."""
     names = sorted(visits.columns)
     table = np.stack([visits.columns[name] for name in names] or [np.zeros(0)], axis=1)
+    course_texts = {key: str(sorted(says.items())) for key, says in visits.courses.items()}
     out = [""] * len(visits)
     order = np.lexsort((visits.side, visits.day, visits.person))
     running: Any = None
@@ -416,9 +434,11 @@ def digests(visits: Visits) -> list[str]:
         if person != last_person:
             running = hashlib.sha256()
         texts = [visits.text(name, row) for name in ("agents", "scanner", "grader")]
+        texts.append(course_texts.get(int(visits.course[row]), ""))
         line = [int(visits.side[row]), day, table[row].tolist(), texts]
-        # Codes of open lists depend on who else was loaded; their texts stand for them.
-        for name in ("agents", "scanner", "grader"):
+        # Codes of open lists depend on who else was loaded, those of courses on the order in which
+        # they were stored; their texts stand for them.
+        for name in ("agents", "scanner", "grader", "course"):
             line[2][names.index(name)] = 0
         running.update(repr(line).encode())
         pending.append(row)

@@ -5,7 +5,7 @@ Every service that writes refreshes the eyes it touched, in its own transaction.
 
 import datetime as dt
 from collections import defaultdict
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Collection, Iterable, Mapping, Sequence
 from typing import Any
 
 from clinic import adapters
@@ -24,16 +24,33 @@ def fields_of(patients: Sequence[Patient]) -> dict[int, Fields]:
     """Return the projection of every eye of some patients, computed from the log alone."""
     records = adapters.read(patients)
     loaded = adapters.from_records(records, {patient.pk: patient for patient in patients})
+    eyes = list(records.eyes)
+    return fields_from(
+        records,
+        loaded,
+        plans=_plans(eyes),
+        reviews=_reviews(eyes),
+        answers=_answers(eyes),
+        histories=set(History.objects.filter(eye_id__in=eyes).values_list("eye_id", flat=True)),
+    )
+
+
+def fields_from(
+    records: adapters.Records,
+    loaded: adapters.Loaded,
+    *,
+    plans: Mapping[int, Sequence[Plan]],
+    reviews: Mapping[int, Sequence[Review]],
+    answers: Mapping[int, Sequence[Answer]],
+    histories: Collection[int],
+) -> dict[int, Fields]:
+    """Return the projection of every eye of some records; reads nothing."""
     rows_of: dict[int, list[int]] = defaultdict(list)
     for row, place in enumerate(loaded.places):
         rows_of[place.eye_id].append(row)
-    eyes = list(records.eyes)
-    plans, reviews = _plans(eyes), _reviews(eyes)
-    answers = _answers(eyes)
-    histories = set(History.objects.filter(eye_id__in=eyes).values_list("eye_id", flat=True))
     compared = Comparisons(loaded.visits, SKIP_BACK_DAYS) if len(loaded.visits) else None
     out = {}
-    for eye in eyes:
+    for eye in records.eyes:
         fields = _blank(records, eye)
         fields["history_entered"] = eye in histories
         fields |= _from_reviews(reviews.get(eye, []), answers.get(eye, []))

@@ -66,12 +66,16 @@ def item_digest(row: VerdictRow) -> str:
     return hashlib.sha256(ledger.canonical_text(evidence).encode()).hexdigest()
 
 
-def as_stored(row: VerdictRow) -> dict[str, Any]:
-    """Return a verdict row as it stands in a review."""
+def as_stored(row: VerdictRow, assumed: Sequence[str] = ()) -> dict[str, Any]:
+    """Return a verdict row as it stands in a review, with what intake took for granted."""
     stored = asdict(row)
     del stored["row"], stored["person"]
     stored["missing"] = list(row.missing)
     stored["digest"] = item_digest(row)
+    if assumed and stored["working"]:
+        said = list(stored["working"].get("assumed") or ())
+        said += [one for one in assumed if not any(one in other for other in said)]
+        stored["working"]["assumed"] = said
     return stored
 
 
@@ -161,7 +165,7 @@ def _found(
         inputs_digest=loaded.digests[row],
         limits=limits,
         outcomes={one.rule: one.outcome for one in own if one.row == row and one.outcome},
-        raised=[as_stored(one) for one in own if one.outcome in KEPT],
+        raised=[as_stored(one, loaded.places[row].assumed) for one in own if one.outcome in KEPT],
         reading=_reading(reviewed, row, readings),
         top_rank=RANK_WORDS[top],
     )
