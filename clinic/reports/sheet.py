@@ -3,7 +3,7 @@
 Layout and painting are apart so that "page x of y" is known before the first page is painted.
 """
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -116,24 +116,14 @@ class Sheet:
             self.need(step)
             count = max(1, int((self.left_over + 0.01) // step))
             now, left = left[:count], left[count:]
+            first = self.y - size
             words = [
-                (text, x, heavy, hue, self.y - size + dy) for text, x, heavy, hue, dy in beside
+                block((f"{text} ",), x, heavy, hue, first + dy, size)
+                for text, x, heavy, hue, dy in beside
             ]
             beside = ()
-            words += [
-                (line, self.paper.left + indent, bold, tone, self.y - size - step * n)
-                for n, line in enumerate(now)
-            ]
-            # A space ends each line but the last, so that a reader of the tags joins no words.
-            self.paint(
-                marked(
-                    tag,
-                    [
-                        written(text + " " * (n + 1 < len(words)), x, heavy, hue, y, size)
-                        for n, (text, x, heavy, hue, y) in enumerate(words)
-                    ],
-                )
-            )
+            words.append(block(now, self.paper.left + indent, bold, tone, first, size))
+            self.paint(marked(tag, words))
             self.y -= step * len(now)
 
     def figure(self, height: float, draw: Callable[[Canvas, float], None], alt: str) -> None:
@@ -146,11 +136,23 @@ class Sheet:
 
 def written(text: str, x: float, bold: bool, tone: str, y: float, size: float) -> Paint:
     """Return the painting of one line of printable text."""
+    return block((text,), x, bold, tone, y, size)
+
+
+def block(lines: Sequence[str], x: float, bold: bool, tone: str, y: float, size: float) -> Paint:
+    """Return the painting of lines one under the other, the first on ``y``.
+
+    A space ends each line but the last, so that a reader of the tags joins no words.
+    """
+    spaced = [line + " " for line in lines[:-1]] + list(lines[-1:])
 
     def paint(canvas: Canvas) -> None:
-        canvas.setFillColor(ink(tone))
-        canvas.setFont(BOLD if bold else REGULAR, size)
-        canvas.drawString(x, y, text)
+        text = canvas.beginText(x, y)
+        text.setFont(BOLD if bold else REGULAR, size, size * LEADING)
+        text.setFillColor(ink(tone))
+        for line in spaced:
+            text.textLine(line)
+        canvas.drawText(text)
 
     return paint
 

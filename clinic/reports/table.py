@@ -13,12 +13,12 @@ from clinic.reports.sheet import (
     Paint,
     Sheet,
     artifact,
+    block,
     closed,
     filled,
     marked,
     opened,
     ruled,
-    written,
 )
 from clinic.reports.wrap import lines_of
 
@@ -122,17 +122,7 @@ def _words(
     return [
         marked(
             tag,
-            [
-                written(
-                    line + " " * (n + 1 < len(lines)),
-                    place.x,
-                    head,
-                    QUIET if head else INK,
-                    _base(top, n),
-                    SIZE,
-                )
-                for n, line in enumerate(lines)
-            ],
+            [block(lines, place.x, head, QUIET if head else INK, _base(top, 0), SIZE)],
             scope="Column" if head else "",
             columns=columns,
         )
@@ -150,11 +140,7 @@ def _head(sheet: Sheet, places: Sequence[Placed], high: float, repeated: bool) -
     top, left, room = sheet.y, sheet.paper.left, sheet.paper.room
     line = ruled(left, top - high, left + room, top - high, QUIET, 0.7)
     if repeated:
-        words = [
-            written(text, place.x, True, QUIET, _base(top, n), SIZE)
-            for place in places
-            for n, text in enumerate(place.title)
-        ]
+        words = [block(place.title, place.x, True, QUIET, _base(top, 0), SIZE) for place in places]
         sheet.paint(artifact([*words, line]))
     else:
         cells = _words(places, [place.title for place in places], top, "TH")
