@@ -35,7 +35,10 @@ from clinic.models import (
 )
 from clinic.services import ledger
 from clinic.services.bulk_insert import Prepared, insert, prepare
+from clinic.services.bulk_review import said_of
 from clinic.services.past import PastEye, PastEyeVisit, PastFile, PastPerson, PastVisit
+from clinic.services.projection import eye_now_refresh
+from clinic.services.reviews import review_latest
 
 PARTS: tuple[tuple[str, type[models.Model]], ...] = (
     ("measured", Measured),
@@ -43,6 +46,7 @@ PARTS: tuple[tuple[str, type[models.Model]], ...] = (
     ("treated", Treated),
     ("ahead", NextStep),
 )
+KNOWN_AT_ONCE = 200
 # Parents before children: a row can only point to what has its key already.
 ORDER: tuple[type[models.Model], ...] = (
     Patient,
@@ -98,24 +102,47 @@ def visits_take_in(
     action: str,
     file: PastFile | None = None,
     before_commit: Callable[[dict[str, Patient]], None] | None = None,
+    today: dt.date,
 ) -> Stored:
     """Store people with all their past visits, or nothing.
 
-    ``before_commit`` is called with the patients while the transaction is still open (the key file
-    is written there); if it raises, nothing is stored. Raises ``IntegrityError`` when the file was
-    taken in before or a visit of that kind and day exists.
+    The newest visit of each new eye is reviewed and the eye projected, both worked out beforehand;
+    eyes that were known before are reviewed and projected right after, in a transaction of their
+    own. ``before_commit`` is called with the patients while the transaction is still open (the key
+    file is written there); if it raises, nothing is stored. Raises ``IntegrityError`` when the file
+    was taken in before or a visit of that kind and day exists.
     """
     built = build(site=site, people=people, by=by, at=at, file=file)
+    assumed = () if file is None else file.assumed
+    said = said_of(
+        built.rows, site=site, by=by, at=built.at, today=today, why=action, assumed=assumed
+    )
     ready = [prepare(built.rows.get(model, [])) for model in ORDER]
+    ready.append(prepare(said.reviews))
     items = ledger_items(built, action)
     with transaction.atomic():
         if built.file is not None:
             built.file.save()
         insert_all(ready)
+        insert(prepare(said.eye_now()))
         ledger.record_many(items, by=by, at=at)
         if before_commit is not None:
             before_commit(built.patients)
+    review_known(people, by=by, at=built.at, today=today, why=action)
     return Stored(built.patients, built.visits, built.file)
+
+
+def review_known(
+    people: Sequence[PastPerson], *, by: User, at: dt.datetime, today: dt.date, why: str
+) -> None:
+    """Review the newest visits of people who were enrolled before, and project their eyes anew."""
+    known = [person.patient for person in people if person.patient is not None]
+    if not known:
+        return
+    review_latest(patients=known, by=by, at=at, today=today, why=why)
+    for start in range(0, len(known), KNOWN_AT_ONCE):
+        with transaction.atomic():
+            eye_now_refresh(patients=known[start : start + KNOWN_AT_ONCE])
 
 
 def insert_all(ready: Iterable[Prepared | None]) -> None:

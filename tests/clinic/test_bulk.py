@@ -11,11 +11,13 @@ from clinic.models import (
     ContactEntry,
     Entry,
     Eye,
+    EyeNow,
     EyeState,
     IntakeFile,
     Measured,
     Patient,
     Plan,
+    Review,
     Site,
     Treated,
     User,
@@ -23,8 +25,10 @@ from clinic.models import (
 )
 from clinic.services.bulk import Stored, visits_take_in
 from clinic.services.past import PastEye, PastEyeVisit, PastFile, PastPerson, PastVisit
+from clinic.services.projection import differing
 
 pytestmark = pytest.mark.django_db
+TODAY = dt.date(2026, 3, 4)
 AT = dt.datetime(2026, 3, 4, 9, 30, tzinfo=dt.UTC)
 FILE = PastFile("ab" * 32, "old log", 2, 0, ("one scanner per eye",))
 
@@ -60,7 +64,9 @@ def person(
 
 
 def take_in(site: Site, by: User, *people: PastPerson, file: PastFile | None = FILE) -> Stored:
-    return visits_take_in(site=site, people=people, by=by, at=AT, action="intake", file=file)
+    return visits_take_in(
+        site=site, people=people, by=by, at=AT, today=TODAY, action="intake", file=file
+    )
 
 
 def test_everything_is_stored_and_points_to_its_own_parents(site: Site, by: User) -> None:
@@ -122,7 +128,13 @@ def test_an_error_before_the_commit_leaves_nothing_behind(site: Site, by: User) 
 
     with pytest.raises(OSError, match="full"):
         visits_take_in(
-            site=site, people=[person("a", 1)], by=by, at=AT, action="intake", before_commit=fails
+            site=site,
+            people=[person("a", 1)],
+            by=by,
+            at=AT,
+            today=TODAY,
+            action="intake",
+            before_commit=fails,
         )
     assert not Patient.objects.exists()
 
@@ -132,6 +144,24 @@ def test_the_same_file_twice_at_one_site_is_refused(site: Site, by: User) -> Non
     with pytest.raises(IntegrityError):
         take_in(site, by, person("b", 1))
     assert Patient.objects.count() == 1
+
+
+def test_a_later_file_reviews_and_projects_the_people_it_adds_to(site: Site, by: User) -> None:
+    first = take_in(site, by, person("a", 1), file=None)
+    patient = first.patients["a"]
+    assert patient.eyes.get().now.last_visit_day == dt.date(2025, 1, 1)
+    take_in(site, by, person("a", 9, patient=patient), file=None)
+    assert EyeNow.objects.get().last_visit_day == dt.date(2025, 1, 9)
+    assert differing([patient]) == []
+    assert Review.objects.filter(visit__day=dt.date(2025, 1, 9)).count() == 1
+
+
+def test_what_intake_assumed_is_said_in_the_stored_working(site: Site, by: User) -> None:
+    alarm = PastVisit(dt.date(2025, 1, 5), "planned", 0, (PastEyeVisit("R", {"symptoms": "pain"}),))
+    base = person("a", 1)
+    take_in(site, by, PastPerson("a", "f", 1950, base.eyes, (alarm,)))
+    row = next(row for row in Review.objects.get().raised if row["rule"] == "alarm_symptoms")
+    assert "one scanner per eye" in row["working"]["assumed"]
 
 
 def test_contacts_are_stored_with_their_eye(site: Site, by: User) -> None:

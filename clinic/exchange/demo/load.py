@@ -5,16 +5,26 @@ from dataclasses import dataclass
 
 from django.db import transaction
 
+from clinic.exchange.demo.afterwards import answer_some, correct_one
 from clinic.exchange.demo.as_past import past_person
 from clinic.exchange.demo.generate import demo_rows
 from clinic.exchange.demo.people import STAFF
 from clinic.exchange.demo.rows import DemoRows, SiteRow
 from clinic.models import Membership, Patient, Scanner, Site, User
+from clinic.selectors.adopted import parsed
 from clinic.services import ledger
 from clinic.services.bulk import visits_take_in
+from clinic.services.limit_sets import (
+    adoption_confirm,
+    adoption_propose,
+    from_memory,
+    limit_set_seed,
+)
 from trends.errors import EbblineError
 
 ACTION = "demo"
+CORRECTED = "longest"
+ADOPTED_SET = "general"
 EVERY_WEEKDAY = "0,1,2,3,4,5,6"
 
 
@@ -46,7 +56,10 @@ def demo_load(*, today: dt.date, at: dt.datetime) -> DemoLoaded:
             for slug in row.sites:
                 join(users[row.username], sites[slug], row.roles)
         record_sites(sites, users["steward"], at)
-        patients = people(rows, sites, users["recorder"], at)
+        adopt_general(sites, users, at, today)
+        patients = people(rows, sites, users["recorder"], at, today)
+        correct_one(patients[CORRECTED], "R", users["recorder"], at, today)
+        answer_some(rows, patients, users["clinician"], at, today)
     return DemoLoaded(users, sites, patients)
 
 
@@ -108,12 +121,30 @@ def record_sites(sites: dict[str, Site], by: User, at: dt.datetime) -> None:
     ledger.record_many(items, by=by, at=at)
 
 
-def people(rows: DemoRows, sites: dict[str, Site], by: User, at: dt.datetime) -> dict[str, Patient]:
+def adopt_general(
+    sites: dict[str, Site], users: dict[str, User], at: dt.datetime, today: dt.date
+) -> None:
+    """Adopt the shipped set at each site: proposed by the steward, confirmed by the clinician.
+
+    The invented clinician ticks every value from memory; a real one checks them first.
+    """
+    general = next(row for row in limit_set_seed(at=at) if row.name == ADOPTED_SET)
+    ticked = from_memory(parsed(general.text))
+    for site in sites.values():
+        proposal = adoption_propose(site=site, limit_set=general, by=users["steward"], at=at)
+        adoption_confirm(
+            adoption=proposal, ticked=ticked, by=users["clinician"], at=at, today=today
+        )
+
+
+def people(
+    rows: DemoRows, sites: dict[str, Site], by: User, at: dt.datetime, today: dt.date
+) -> dict[str, Patient]:
     """Store everybody of every site with all their visits."""
     stored: dict[str, Patient] = {}
     for slug, site in sites.items():
         scanners = {scanner.label: scanner for scanner in site.scanners.all()}
         here = [past_person(one, scanners, at) for one in rows.people if one.site == slug]
-        done = visits_take_in(site=site, people=here, by=by, at=at, action=ACTION)
+        done = visits_take_in(site=site, people=here, by=by, at=at, today=today, action=ACTION)
         stored.update(done.patients)
     return stored

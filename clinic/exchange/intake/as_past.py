@@ -214,7 +214,7 @@ def treated(row: Row) -> tuple[Values | None, tuple[Values, ...]]:
         "outcome": "nothing" if nothing else "given",
         "agent": "" if not agents or agents == ["none"] else agents[0],
         "dose_ug": None if nothing else row.number("dose_mg", 1000),
-        "laser": laser,
+        "laser": "none" if laser == "no" else laser,
         "iop_after_tenths": after,
     }
     return values, tuple({"agent": agent} for agent in agents[1:])

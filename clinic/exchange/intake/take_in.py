@@ -88,6 +88,7 @@ def take_in(
     label: str,
     by: User,
     at: dt.datetime,
+    today: dt.date,
 ) -> Stored:
     """Store the planned file and its keys, or nothing of both."""
 
@@ -111,6 +112,7 @@ def take_in(
             action=ACTION,
             file=file,
             before_commit=keep_keys,
+            today=today,
         )
     except BaseException as problem:
         half_name(key_path).unlink(missing_ok=True)

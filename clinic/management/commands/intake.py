@@ -104,6 +104,7 @@ class Command(BaseCommand):
             label=mapping.about or path.name,
             by=by,
             at=timezone.now(),
+            today=timezone.localdate(),
         )
         self.say(
             f"Stored {plan.visits:,} eye-visits of {plan.eyes:,} eyes, "
