@@ -110,10 +110,17 @@ def agents_of(row: Treated) -> list[str]:
         for words in (
             first,
             *(more.agent for more in row.more_treatments.all()),
-            f"{worded(row.laser)} laser" if row.laser and row.laser != "none" else "",
+            laser_text(row.laser),
         )
         if words
     ] or ["treatment, agent not recorded"]
+
+
+def laser_text(laser: str) -> str:
+    """Return the laser given, with its kind where it was recorded."""
+    if laser in ("", "none"):
+        return ""
+    return "laser" if laser == "yes" else f"{worded(laser)} laser"
 
 
 def treated_text(row: Treated) -> str:

@@ -14,8 +14,16 @@ from clinic.chart import Panels
 from clinic.chart.figure import figure
 from clinic.chart.spoken import spoken
 from clinic.content import EyeReport
-from clinic.selectors.access import CLINICIAN, eye_for, site_for
+from clinic.selectors.access import CLINICIAN, WRITERS, eye_for, site_for
 from clinic.selectors.report_content import both_eyes_chart, report_content
+
+EYE_SCREENS = (
+    ("course", "Courses"),
+    ("plan", "Plan"),
+    ("status", "Status"),
+    ("event", "Events"),
+    ("history", "History"),
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,7 +59,9 @@ def eye_course(request: HttpRequest, slug: str, code: str, side: str) -> HttpRes
         "chart_words": spoken(chart),
         "numbers": number_rows(chart),
         "visits": sorted(eye.visits, key=lambda row: row.day, reverse=True),
+        "reasons": [row for row in eye.decisions if row.because],
         "dated": dated_lists(eye),
+        "eye_screens": EYE_SCREENS if here.may(*WRITERS) else (),
         "may_answer": here.may(CLINICIAN),
     }
     return render(request, "eye_course/eye_course.html", context)
