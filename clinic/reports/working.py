@@ -22,7 +22,7 @@ def verdict(sheet: Sheet, one: VerdictText, sources: tuple[str, ...]) -> None:
     sheet.pair("May be weighed", ["; ".join(one.options)])
     sheet.pair("Not for", ["; ".join(one.not_for)])
     sheet.pair("Source", [numbered(one.sources, sources)])
-    sheet.pair("Answer", [one.answer or "open"])
+    sheet.pair("Answer", [one.answer or ("open" if one.answerable else "")])
 
 
 def numbered(used: tuple[str, ...], listed: tuple[str, ...]) -> str:

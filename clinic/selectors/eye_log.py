@@ -95,7 +95,7 @@ def eye_logs(patient: Patient) -> list[EyeLog]:
     courses = _by_eye(Course.objects.filter(**mine).order_by("from_day", "seq"))
     answered = _by_eye(answers.order_by("visit__day", "seq"))
     events = _by_eye(standing_events(patient))
-    nows = {now.eye_id: now for now in EyeNow.objects.filter(**mine)}
+    nows = {now.eye_id: now for now in EyeNow.objects.filter(**mine).select_related("eye")}
     return [
         EyeLog(
             eye,

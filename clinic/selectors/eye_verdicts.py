@@ -15,6 +15,7 @@ from clinic.selectors.adopted import Adopted, adopted_for, of_cause
 from clinic.selectors.eye_log import EyeLog
 from clinic.selectors.eye_said import EyeSaid, Row, SaidRow, said_of
 from clinic.selectors.eye_words import answer_text
+from clinic.selectors.standing import standing_items
 from clinic.selectors.verdict_texts import by_rank, missing_text, verdict_text
 from clinic.selectors.visit_words import worded
 from trends.limits import LimitSet
@@ -55,10 +56,13 @@ def verdicts_for(
     adopted = adopted_for(patient.site)
     sets = {log.eye.pk: of_cause(adopted, log.state.cause if log.state else "") for log in logs}
     said = said_of(patient, {pk: one.limits if one else None for pk, one in sets.items()}, today)
+    standing = standing_items([log.now for log in logs if log.now], patient.site, today)
     named = titles()
     return {
         log.eye.pk: _verdicts(
-            Asked(log, sets[log.eye.pk], patient.site.emergency_text, named), said[log.eye.pk]
+            Asked(log, sets[log.eye.pk], patient.site.emergency_text, named),
+            said[log.eye.pk],
+            standing.get(log.eye.pk, []),
         )
         for log in logs
     }
@@ -89,6 +93,15 @@ class Asked:
             answerable=one.row["outcome"] == "raised",
         )
 
+    def standing_text(self, row: Row) -> VerdictText:
+        """Return what a rule of today's date raises; it goes when the date or the plan changes."""
+        return verdict_text(
+            {**row, "outcome": "raised"},
+            title=self.title(row),
+            adopted=self.adopted.words if self.adopted else "",
+            emergency_text=self.emergency_text,
+        )
+
     def answer(self, one: SaidRow) -> str:
         """Return the newest answer; one given on other inputs leaves the row open again."""
         mine = [
@@ -110,14 +123,13 @@ class Asked:
         return next((row["digest"] for row in stored if row["rule"] == one.row["rule"]), "")
 
 
-def _verdicts(asked: Asked, said: EyeSaid) -> EyeVerdicts:
-    """Return what is said of one eye."""
+def _verdicts(asked: Asked, said: EyeSaid, standing: Sequence[Row]) -> EyeVerdicts:
+    """Return what is said of one eye: its visits, then what depends on today alone."""
     log, adopted = asked.log, asked.adopted
     texts = [asked.text(one) for one in said.rows if one.row["outcome"] in ("raised", "still")]
     newest = max((text.from_day for text in texts if text.from_day), default=None)
-    raised = by_rank(
-        text for text in texts if text.outcome == "Raised" and not _is_done(text, newest)
-    )
+    shown = [text for text in texts if text.outcome == "Raised" and not _is_done(text, newest)]
+    raised = by_rank([*shown, *(asked.standing_text(row) for row in standing)])
     read = next((one for one in reversed(log.visits) if one.visit.pk in said.readings), None)
     return EyeVerdicts(
         limits=adopted.limits if adopted else None,

@@ -6,7 +6,7 @@ from typing import Any
 
 from django.http import HttpRequest, HttpResponse
 from django.shortcuts import render
-from django.urls import path
+from django.urls import path, register_converter
 from django.utils import timezone
 from django.views.decorators.http import require_safe
 
@@ -93,4 +93,19 @@ def dated_lists(eye: EyeReport) -> list[tuple[str, Any]]:
     ]
 
 
-routes = [path("p/<code>/<str:side>/", eye_course, name="eye")]
+class SideInWords:
+    """A side in an address: right or left, in words."""
+
+    regex = "right|left"
+
+    def to_python(self, text: str) -> str:
+        """Return the word."""
+        return text
+
+    def to_url(self, side: str) -> str:
+        """Return the word."""
+        return side
+
+
+register_converter(SideInWords, "side")
+routes = [path("p/<code>/<side:side>/", eye_course, name="eye")]

@@ -1,4 +1,6 @@
-"""Prints from the pages: the trend report of one person."""
+"""Prints from the pages: the trend report of one person, the clinic list of one day."""
+
+import datetime as dt
 
 from django.http import HttpRequest, HttpResponse
 from django.urls import path
@@ -6,8 +8,9 @@ from django.utils import timezone
 from django.views.decorators.http import require_safe
 
 from clinic.selectors.access import patient_for, site_for
+from clinic.selectors.evening_content import evening_content
 from clinic.selectors.report_content import report_content
-from clinic.services.prints import report_printed
+from clinic.services.prints import list_printed, report_printed
 
 
 @require_safe
@@ -23,6 +26,18 @@ def report(request: HttpRequest, slug: str, code: str) -> HttpResponse:
     return pdf_response(trend.render([content], here.site.paper), f"trend-{patient.code}.pdf")
 
 
+@require_safe
+def evening_list(request: HttpRequest, slug: str, day: dt.date) -> HttpResponse:
+    """Return the list of a day as a PDF, for a day without power; the print is noted."""
+    from clinic.reports import evening
+
+    here = site_for(request.user, slug)
+    at = timezone.now()
+    list_printed(site=here.site, day=day, by=here.user, at=at)
+    made = evening.render(evening_content(here, day, at), here.site.paper)
+    return pdf_response(made, f"list-{day.isoformat()}.pdf")
+
+
 def pdf_response(made: bytes, name: str) -> HttpResponse:
     """Return a PDF shown in the browser under a file name that holds the code only."""
     response = HttpResponse(made, content_type="application/pdf")
@@ -30,4 +45,7 @@ def pdf_response(made: bytes, name: str) -> HttpResponse:
     return response
 
 
-routes = [path("p/<code>/report.pdf", report, name="report")]
+routes = [
+    path("p/<code>/report.pdf", report, name="report"),
+    path("list/<day:day>/evening.pdf", evening_list, name="evening_list"),
+]
