@@ -16,14 +16,14 @@ from django.db import connection, models
 class Prepared:
     """New instances of one model with their column values; links to other new rows stay open.
 
-    ``links`` holds (place of the column, name of the field).
+    ``links`` holds (place of the column, the linked instance of each row or None).
     """
 
     model: type[models.Model]
     instances: list[models.Model]
     columns: list[str]
     values: list[list[Any]]
-    links: list[tuple[int, str]]
+    links: list[tuple[int, list[models.Model | None]]]
 
 
 def prepare(instances: Sequence[models.Model]) -> Prepared | None:
@@ -32,21 +32,17 @@ def prepare(instances: Sequence[models.Model]) -> Prepared | None:
         return None
     model = type(instances[0])
     fields = list(model._meta.concrete_fields)
-    links = [
-        (place, field.name)
-        for place, field in enumerate(fields)
-        if isinstance(field, models.ForeignKey)
-    ]
-    linked = {place for place, _ in links}
+    links: list[tuple[int, list[models.Model | None]]] = []
     values = [
-        [
-            None
-            if place in linked
-            else field.get_db_prep_save(field.pre_save(one, True), connection)
-            for place, field in enumerate(fields)
-        ]
+        [field.get_db_prep_save(field.pre_save(one, True), connection) for field in fields]
         for one in instances
     ]
+    for place, field in enumerate(fields):
+        if isinstance(field, models.ForeignKey):
+            # A link set by its key alone has no instance in the cache; its value is final already.
+            linked = [one._state.fields_cache.get(field.name) for one in instances]
+            if any(other is not None for other in linked):
+                links.append((place, linked))
     columns = [str(field.column) for field in fields]
     return Prepared(model, list(instances), columns, values, links)
 
@@ -80,9 +76,10 @@ def insert(prepared: Prepared | None) -> int:
     for one, row, key in zip(prepared.instances, prepared.values, keys, strict=True):
         one.pk = key
         row[key_place] = key
-        for place, name in prepared.links:
-            linked = getattr(one, name)
-            row[place] = None if linked is None else linked.pk
+    for place, linked in prepared.links:
+        for row, other in zip(prepared.values, linked, strict=True):
+            if other is not None:
+                row[place] = other.pk
     _execute(prepared)
     return len(prepared.instances)
 
