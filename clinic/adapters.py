@@ -9,6 +9,7 @@ import hashlib
 from collections import defaultdict
 from collections.abc import Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
+from functools import cached_property
 from typing import Any
 
 import numpy as np
@@ -38,6 +39,7 @@ from trends.measures.acuity import parse as parse_acuity
 from trends.visits import MISSING, Visits, coded, day_number, sorted_visits
 
 BREAKING = (EyeEvent.Kind.LENS, EyeEvent.Kind.VITRECTOMY, EyeEvent.Kind.OIL)
+UNMEASURED = (Visit.Kind.CONTACT, Visit.Kind.TREATMENT_ONLY)
 BATCH = 400
 
 
@@ -60,6 +62,23 @@ class Loaded:
     visits: Visits
     places: list[Place]
     digests: list[str] = field(default_factory=list)
+
+    def is_newest(self, place: Place) -> bool:
+        """Say whether a place is of its eye's last visit that could measure, or came after it.
+
+        A call or a treatment on another day takes nothing off the list that was raised before it.
+        """
+        return place.day >= self._newest_days[place.eye_id]
+
+    @cached_property
+    def _newest_days(self) -> dict[int, dt.date]:
+        able: dict[int, dt.date] = {}
+        every: dict[int, dt.date] = {}
+        for place in self.places:
+            every[place.eye_id] = max(place.day, every.get(place.eye_id, place.day))
+            if place.kind not in UNMEASURED:
+                able[place.eye_id] = max(place.day, able.get(place.eye_id, place.day))
+        return {**every, **able}
 
     def rows_of(self, eye_ids: Iterable[int]) -> list[int]:
         """Return the rows of some eyes."""

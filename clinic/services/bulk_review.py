@@ -8,7 +8,7 @@ is worked out. Links go over the instances themselves and get real keys when the
 import datetime as dt
 import itertools
 from collections import defaultdict
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -84,7 +84,7 @@ def said_of(
     give_provisional_keys(rows)
     records = records_of(rows, tuple(assumed))
     loaded = adapters.from_records(records, {patient.pk: patient for patient in patients})
-    found = reviews.judge(patients, today, is_newest(loaded), loaded)
+    found = reviews.judge(patients, today, loaded.is_newest, loaded)
     eyes = {eye.pk: eye for eye in rows.get(Eye, [])}
     visits = {visit.pk: visit for visit in rows.get(Visit, [])}
     written = reviews.rows_of(found, {}, by=by, at=at, why=why)
@@ -116,14 +116,6 @@ def by_eye(rows: Iterable[Any]) -> dict[int, list[Any]]:
     for row in rows:
         found[row.eye.pk].append(row)
     return found
-
-
-def is_newest(loaded: adapters.Loaded) -> Callable[[adapters.Place], bool]:
-    """Return what says whether a place is on its eye's newest day."""
-    newest: dict[int, dt.date] = {}
-    for place in loaded.places:
-        newest[place.eye_id] = max(place.day, newest.get(place.eye_id, place.day))
-    return lambda place: newest[place.eye_id] == place.day
 
 
 def columns(row: Any, names: Iterable[str]) -> dict[str, Any]:

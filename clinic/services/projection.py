@@ -104,13 +104,20 @@ def _reviews(eyes: Sequence[int]) -> dict[int, list[Review]]:
         row.pk
         for rows_of_eye in found.values()
         for place, row in enumerate(rows_of_eye)
-        if place >= len(rows_of_eye) - 2 or row.top_rank == "raise_first"
+        if place >= min(newest_place(rows_of_eye), len(rows_of_eye) - 2)
+        or row.top_rank == "raise_first"
     ]
     whole = {row.pk: row for row in _in_batches(wanted)}
     return {
         eye: [whole[row.pk] for row in rows_of_eye if row.pk in whole]
         for eye, rows_of_eye in found.items()
     }
+
+
+def newest_place(reviews: Sequence[Review]) -> int:
+    """Return the place of the last visit that could measure; what it raised stays after a call."""
+    able = [place for place, row in enumerate(reviews) if row.visit.kind not in adapters.UNMEASURED]
+    return able[-1] if able else len(reviews) - 1
 
 
 def _in_batches(keys: Sequence[int]) -> Iterable[Review]:
@@ -141,13 +148,14 @@ def answer_state(row: Mapping[str, Any], review: Review, answers: Iterable[Answe
 def _from_reviews(reviews: Sequence[Review], answers: Sequence[Answer]) -> Fields:
     if not reviews:
         return {"open_items": [], "open_top_rank": ""}
-    last = reviews[-1]
+    place = newest_place(reviews)
+    last, shown = reviews[place], reviews[place:]
     items = []
     for review in reversed(reviews):
         for row in review.raised:
             said = answer_state(row, review, answers)
             sticky = is_alarm(row) and not said.get("stands")
-            if row["outcome"] == "raised" and (review is last or sticky):
+            if row["outcome"] == "raised" and (review in shown or sticky):
                 items.append(_item(row, review, said))
     ranks = ("raise_first", "weigh_today", "keep_in_mind")
     open_ranks = [item["rank"] for item in items if not item.get("stands")]

@@ -268,7 +268,7 @@ def review_person(
 def review_latest(
     *, patients: Sequence[Patient], by: User, at: dt.datetime, today: dt.date, why: str
 ) -> list[Review]:
-    """Review the newest visit of each eye: after intake, demo or adoption.
+    """Review the newest visit of each eye, and what came after it: after intake or adoption.
 
     Computed outside the transaction, written in one short one.
     """
@@ -276,20 +276,12 @@ def review_latest(
     for start in range(0, len(patients), BATCH):
         some = patients[start : start + BATCH]
         loaded = adapters.load(some)
-        last: dict[int, dt.date] = {}
-        for place in loaded.places:
-            last[place.eye_id] = max(place.day, last.get(place.eye_id, place.day))
-        wanted = _is_last(last)
         newest = newest_reviews([patient.pk for patient in some])
-        found = judge(some, today, wanted, loaded)
+        found = judge(some, today, loaded.is_newest, loaded)
         rows += rows_of(changed(found, newest), newest, by=by, at=at, why=why)
     with transaction.atomic():
         Review.objects.bulk_create(rows, batch_size=500)
     return rows
-
-
-def _is_last(last: Mapping[int, dt.date]) -> Wanted:
-    return lambda place: last[place.eye_id] == place.day
 
 
 def review_shown(*, patient: Patient, by: User, at: dt.datetime, today: dt.date) -> list[Review]:

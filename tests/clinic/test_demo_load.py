@@ -134,6 +134,9 @@ def test_the_alarm_stands_first_and_open(loaded: DemoLoaded) -> None:
     assert now.open_items[0]["rule"] == "alarm_symptoms"
     assert now.open_items[0]["alarm"] is True
     assert now.booked_day == TODAY
+    # The call takes nothing away of what the visit before it said.
+    assert now.reading
+    assert now.open_items[-1]["counts"]["limit_not_reached"] > 0
 
 
 def test_each_patient_has_a_ledger_entry(loaded: DemoLoaded) -> None:
