@@ -1,6 +1,7 @@
 """From what is handed in to the geometry of the whole chart."""
 
 import datetime as dt
+import math
 from dataclasses import dataclass
 
 from clinic.chart.geometry import LimitLine, Panel, Panels, TimeAxis
@@ -13,17 +14,18 @@ from clinic.chart.value_axis import value_axis, with_band
 
 @dataclass(frozen=True, slots=True)
 class Spec:
-    """A panel's name, unit, and the least span it shows so that a wobble looks like one."""
+    """A panel's name, unit, least span (so that a wobble looks like one) and end of its scale."""
 
     key: str
     title: str
     unit: str
     least_span: float
+    scale_end: float = math.inf
 
 
 SPECS = (
     Spec("cst", "CST", "µm", 100),
-    Spec("letters", "Acuity", "letters", 20),
+    Spec("letters", "Acuity", "letters", 20, 100),
     Spec("iop", "IOP", "mmHg", 10),
 )
 
@@ -50,12 +52,12 @@ def _panel(spec: Spec, eyes: tuple[EyeGiven, ...], time: TimeAxis) -> Panel:
     for reading in readings:
         if reading.amount is not None and not reading.off_chart:
             error = reading.error or 0.0
-            heights += [reading.amount - error, reading.amount + error]
+            heights += [reading.amount - error, min(reading.amount + error, spec.scale_end)]
     axis, band = value_axis(heights, spec.least_span), None
     if any(reading.off_chart for reading in readings):
         axis, band = with_band(axis)
     off_chart_at = {row.label: row.at for row in band.rows} if band else {}
-    series = tuple(series_of(eye, spec.key, off_chart_at) for eye in eyes)
+    series = tuple(series_of(eye, spec.key, off_chart_at, spec.scale_end) for eye in eyes)
     return Panel(spec.key, spec.title, spec.unit, axis, series, limits, band)
 
 

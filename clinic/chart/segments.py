@@ -1,12 +1,15 @@
 """Where a line may run: only between neighbours measured in a comparable way."""
 
 import datetime as dt
+import math
 
 from clinic.chart.geometry import Point, Series
 from clinic.chart.given import SIDE_WORDS, EyeGiven, Reading
 
 
-def series_of(eye: EyeGiven, panel: str, off_chart_at: dict[str, float]) -> Series:
+def series_of(
+    eye: EyeGiven, panel: str, off_chart_at: dict[str, float], scale_end: float = math.inf
+) -> Series:
     """Return one eye's series of a panel; ``off_chart_at`` gives the height of each grade.
 
     A new segment begins where the method changes, where a reading is off the chart, and at an
@@ -18,7 +21,7 @@ def series_of(eye: EyeGiven, panel: str, off_chart_at: dict[str, float]) -> Seri
     loose: list[Point] = []
     last: Reading | None = None
     for reading in readings:
-        point = point_of(reading, off_chart_at)
+        point = point_of(reading, off_chart_at, scale_end)
         if point is None:
             continue
         if reading.provisional:
@@ -40,8 +43,13 @@ def joins(earlier: Reading, later: Reading, cuts: list[dt.date]) -> bool:
     return earlier.comparable == later.comparable
 
 
-def point_of(reading: Reading, off_chart_at: dict[str, float]) -> Point | None:
-    """Return the marker of a reading, or nothing when there is no amount."""
+def point_of(
+    reading: Reading, off_chart_at: dict[str, float], scale_end: float = math.inf
+) -> Point | None:
+    """Return the marker of a reading, or nothing when there is no amount.
+
+    A bar stops where the scale ends: no more letters than a chart has.
+    """
     if reading.off_chart:
         at = off_chart_at[reading.off_chart]
         return Point(reading.day, at, reading.shown, reading.method, hollow=reading.provisional)
@@ -54,6 +62,6 @@ def point_of(reading: Reading, off_chart_at: dict[str, float]) -> Point | None:
         reading.shown,
         reading.method,
         None if error is None else amount - error,
-        None if error is None else amount + error,
+        None if error is None else min(amount + error, max(amount, scale_end)),
         reading.provisional,
     )

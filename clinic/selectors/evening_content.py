@@ -64,14 +64,15 @@ def eye_of(eye: EyeLine, day: dt.date) -> EveningEye:
         side_words=eye.side_words,
         facts=" · ".join(part for part in facts(eye) if part),
         values=" · ".join(values(now, eye.fellow_letters)),
-        reading=f"{now.reading}, from visit of {day_words(now.reading_from)}"
+        reading=f"Regimen reads: {now.reading}, from visit of {day_words(now.reading_from)}"
         if now.reading and now.reading_from
         else "",
         raised=tuple(
             item_text(item, day) for item in (*eye.due, *eye.still_open, *eye.today) if item.is_open
         ),
-        folded=f"{len(eye.folded)} kept in mind; limits not reached by "
-        f"{eye.limits_not_reached} rules; {eye.could_not_tell} couldn't tell",
+        folded=(f"{len(eye.folded)} kept in mind; " if eye.folded else "")
+        + f"limits not reached by {eye.limits_not_reached} "
+        f"rule{'' if eye.limits_not_reached == 1 else 's'}; {eye.could_not_tell} couldn't tell",
     )
 
 

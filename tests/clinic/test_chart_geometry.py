@@ -116,6 +116,13 @@ def test_error_bars_are_the_handed_in_repeatability_and_fit_on_the_axis() -> Non
     assert panel.axis.high >= 540
 
 
+def test_a_bar_of_letters_stops_at_the_hundred_letters_of_the_scale() -> None:
+    one = EyeGiven("R", letters=(Reading(on(0), 95, "95 letters", "etdrs", error=9.0),))
+    panel = panels_for(one).panel("letters")
+    assert [(point.low, point.high) for point in panel.series[0].points] == [(86, 100)]
+    assert panel.axis.high <= 110
+
+
 def test_limit_lines_keep_their_stretch_and_fit_on_the_axis() -> None:
     pieces = (LimitPiece(305, "limit", None, on(4)), LimitPiece(260, "other", on(4), None))
     chart = panels_for(eye(scan(0, 400), scan(8, 420), limits=pieces))
