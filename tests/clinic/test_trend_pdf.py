@@ -282,3 +282,15 @@ def test_no_tone_on_paper_is_a_colour_that_turns_faint_in_grey() -> None:
     assert all(contrast(style.tone) >= 3 for style in styles.EYE_STYLES.values())
     marks = {(style.marker, style.dash) for style in styles.EYE_STYLES.values()}
     assert len(marks) == 2
+
+
+def test_laying_out_a_report_is_known_without_loading_the_pdf_library() -> None:
+    """Start-up and every page stay light: the library is loaded when something is printed."""
+    code = (
+        "import sys, clinic.reports.trend, clinic.reports.evening;"
+        "print([name for name in ('reportlab', 'plotly', 'pandas') if name in sys.modules])"
+    )
+    told = subprocess.run(
+        [sys.executable, "-c", code], cwd=ROOT, capture_output=True, text=True, check=True
+    )
+    assert told.stdout.strip() == "[]"
