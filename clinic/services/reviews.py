@@ -8,7 +8,7 @@ import datetime as dt
 import hashlib
 from collections import defaultdict
 from collections.abc import Callable, Collection, Iterable, Mapping, Sequence
-from dataclasses import asdict, dataclass
+from dataclasses import dataclass
 from typing import Any
 
 from django.db import transaction
@@ -68,14 +68,14 @@ def item_digest(row: VerdictRow) -> str:
 
 def as_stored(row: VerdictRow, assumed: Sequence[str] = ()) -> dict[str, Any]:
     """Return a verdict row as it stands in a review, with what intake took for granted."""
-    stored = asdict(row)
-    del stored["row"], stored["person"]
+    # A shallow copy on purpose: asdict copies every source text of every working, each time.
+    stored = {name: value for name, value in vars(row).items() if name not in ("row", "person")}
     stored["missing"] = list(row.missing)
     stored["digest"] = item_digest(row)
-    if assumed and stored["working"]:
-        said = list(stored["working"].get("assumed") or ())
+    if assumed and row.working:
+        said = list(row.working.get("assumed") or ())
         said += [one for one in assumed if not any(one in other for other in said)]
-        stored["working"]["assumed"] = said
+        stored["working"] = {**row.working, "assumed": said}
     return stored
 
 
