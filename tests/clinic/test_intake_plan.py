@@ -145,6 +145,13 @@ def test_a_cell_that_cannot_be_taken_is_named_in_the_files_terms(
     assert cell.allowed and cell.reason
 
 
+def test_a_day_zero_that_is_too_late_names_the_latest_one_that_fits() -> None:
+    # The sample's longest eye runs 128 days; 128 days before 7 March 2026 is 30 October 2025.
+    with pytest.raises(CellsRefused) as caught:
+        sample("day_numbers_with_cst", dt.date(2026, 1, 1))
+    assert "2025-10-30" in caught.value.cells[0].reason
+
+
 def test_refused_rows_are_left_out_only_when_the_mapping_says_so() -> None:
     rows = ("1|R|2025-02-03|170|300|none|", "1|R|2025-03-03|70|300|none|")
     with pytest.raises(CellsRefused):

@@ -49,7 +49,9 @@ def followed(rng: np.random.Generator, spec: EyeSpec, sex: str, age: int) -> Fol
         care.weeks = HELD_MID_COURSE["weeks"]
         care.seen_when_treated.append(Seen(0, round(eye.dry_um + eye.fluid_um), 0, eye.is_wet()))
     operated = spec.cause == "after_surgery" or rng.random() < (age - 45) / 90
-    return Followed(spec, eye, care, "pseudophakic" if operated else "phakic")
+    return Followed(
+        spec, eye, care, "artificial" if operated else ("cataract" if age > 66 else "clear")
+    )
 
 
 def decision(one: Followed, choice: Choice, weeks: int) -> Decision:

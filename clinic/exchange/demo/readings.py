@@ -82,8 +82,9 @@ def give(rng: np.random.Generator, agent: str, before_tenths: int | None) -> Giv
         outcome="given",
         agent=agent,
         dose_ug=int(table["dose_ug"]),
+        route="intravitreal",
         implant=bool(table.get("implant", False)),
-        perception_after="counts_fingers" if checked else "",
+        perception_after="fingers" if checked else "",
         iop_after_tenths=after,
     )
 

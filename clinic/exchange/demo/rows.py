@@ -46,6 +46,7 @@ class Given:
     outcome: str
     agent: str = ""
     dose_ug: int | None = None
+    route: str = ""
     laser: str = ""
     implant: bool = False
     not_given_because: str = ""

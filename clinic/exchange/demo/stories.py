@@ -117,7 +117,7 @@ def new_lens(eye: EyeVisit, side: str) -> EyeVisit:
         return eye
     letters = eye.measured.acuity
     better = str(min(95, int(letters) + 6)) if letters.isdigit() else letters
-    entry = dataclasses.replace(eye.measured, lens="pseudophakic", acuity=better)
+    entry = dataclasses.replace(eye.measured, lens="artificial", acuity=better)
     return dataclasses.replace(eye, measured=entry)
 
 
@@ -172,7 +172,7 @@ def laser_once(person: PersonRow, today: dt.date) -> PersonRow:
     side = person.eyes[0].side
     row = person.visits[number]
     eyes = tuple(
-        dataclasses.replace(eye, treated=dataclasses.replace(eye.treated, laser="yes"))
+        dataclasses.replace(eye, treated=dataclasses.replace(eye.treated, laser="focal"))
         if eye.side == side and eye.treated is not None
         else eye
         for eye in row.eyes

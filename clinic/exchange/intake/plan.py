@@ -67,7 +67,7 @@ def plan_intake(
     """
     tidy = mapped(source, mapping, day_zero)
     refused = list(tidy.refused)
-    good, visits, more = sound_rows(tidy, source, mapping, known, today)
+    good, visits, more = sound_rows(tidy, source, mapping, known, today, day_zero)
     refused += more
     refused.sort(key=lambda cell: cell.row)
     if refused and not mapping.leave_out:
@@ -98,6 +98,7 @@ def sound_rows(
     mapping: ColumnMapping,
     known: Mapping[str, Patient],
     today: dt.date,
+    day_zero: dt.date | None,
 ) -> tuple[Mapped, Visits | None, list[RefusedCell]]:
     """Return the rows without a refused cell, typed, and the cells refused on the way.
 
@@ -106,7 +107,7 @@ def sound_rows(
     """
     more: list[RefusedCell] = []
     good = tidy.without({cell.row for cell in tidy.refused})
-    clashes = [*future(good, today), *already_there(good, known)]
+    clashes = [*future(good, today, day_zero), *already_there(good, known)]
     more += clashes
     good = good.without({cell.row for cell in clashes})
     while good.row_numbers:
@@ -118,18 +119,20 @@ def sound_rows(
     return good, None, more
 
 
-def future(tidy: Mapped, today: dt.date) -> list[RefusedCell]:
-    """Return the dates after today: a past visit can't lie ahead."""
+def future(tidy: Mapped, today: dt.date, day_zero: dt.date | None) -> list[RefusedCell]:
+    """Return the dates after today: a past visit can't lie ahead.
+
+    With day numbers the reason names the latest day 0 that would fit the whole file.
+    """
     limit = today.isoformat()
+    dates = tidy.columns["date"]
+    reason = "The visit lies in the future."
+    if day_zero is not None and dates:
+        longest = dt.date.fromisoformat(max(dates)) - day_zero
+        reason += f" Choose {(today - longest).isoformat()} or an earlier day as --day-zero."
     return [
-        RefusedCell(
-            number,
-            tidy.from_header["date"],
-            date,
-            f"up to {limit}",
-            "The visit lies in the future.",
-        )
-        for number, date in zip(tidy.row_numbers, tidy.columns["date"], strict=True)
+        RefusedCell(number, tidy.from_header["date"], date, f"up to {limit}", reason)
+        for number, date in zip(tidy.row_numbers, dates, strict=True)
         if date > limit
     ]
 
