@@ -28,7 +28,6 @@ from clinic.models import (
     NextStep,
     Patient,
     Plan,
-    Revision,
     Treated,
     Visit,
 )
@@ -86,7 +85,7 @@ class Loaded:
         return [row for row, place in enumerate(self.places) if place.eye_id in wanted]
 
 
-def _current(model: type[Revision], patients: Sequence[int], *names: str) -> dict[Any, Any]:
+def _current(model: Any, patients: Sequence[int], *names: str) -> dict[Any, Any]:
     """Return the current, not withdrawn record of each (visit, eye) as a mapping of columns."""
     found: dict[tuple[int, int], dict[str, Any]] = {}
     for start in range(0, len(patients), BATCH):
@@ -152,15 +151,19 @@ def read(patients: Sequence[Patient]) -> Records:
     ids = [patient.pk for patient in patients]
     visits: list[dict[str, Any]] = []
     eyes: dict[int, dict[str, Any]] = {}
-    states, courses, histories, events = [], [], [], []
+    states: list[EyeState] = []
+    courses: list[Course] = []
+    histories: list[History] = []
+    events: list[EyeEvent] = []
     more: dict[int, list[str]] = defaultdict(list)
     for start in range(0, len(ids), BATCH):
         some = ids[start : start + BATCH]
-        visits += Visit.objects.filter(patient_id__in=some).values(
+        found = Visit.objects.filter(patient_id__in=some).values(
             "pk", "patient_id", "day", "kind", "entry", "from_intake_id"
         )
+        visits += [dict(visit) for visit in found]
         for eye in Eye.objects.filter(patient_id__in=some).values("pk", "patient_id", "side"):
-            eyes[eye["pk"]] = eye
+            eyes[eye["pk"]] = dict(eye)
         mine = {"eye__patient_id__in": some}
         states += EyeState.objects.filter(**mine).order_by("seq")
         courses += Course.objects.filter(**mine).order_by("from_day", "seq")
@@ -438,12 +441,15 @@ def _histories(
 def digests(visits: Visits) -> list[str]:
     """Return for each row a digest of all this person's inputs up to that day."""
     names = sorted(visits.columns)
-    table = np.stack([visits.columns[name] for name in names] or [np.zeros(0)], axis=1)
+    table = np.stack(
+        [visits.columns[name] for name in names] or [np.zeros(0, dtype=np.int32)], axis=1
+    )
     course_texts = {key: str(sorted(says.items())) for key, says in visits.courses.items()}
     out = [""] * len(visits)
     order = np.lexsort((visits.side, visits.day, visits.person))
     running: Any = None
-    last_person, pending, last_day = -1, [], None
+    last_person, last_day = -1, None
+    pending: list[int] = []
     for row in order.tolist():
         person, day = int(visits.person[row]), int(visits.day[row])
         if person != last_person or day != last_day:

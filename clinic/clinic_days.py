@@ -47,3 +47,12 @@ def default_day(site: Site, today: dt.date) -> dt.date:
     if is_clinic_day(site, today, said) and said.get(today) != ClinicDay.State.CLOSED:
         return today
     return next_clinic_day(site, today, said) or today
+
+
+def last_ended_day(site: Site, today: dt.date) -> dt.date:
+    """Return the last day that is over: yesterday, or today once it was closed.
+
+    Standing rules are asked as of the end of a day: before that nobody failed to come.
+    """
+    closed = exceptions(site).get(today) == ClinicDay.State.CLOSED
+    return today if closed else today - dt.timedelta(days=1)

@@ -69,7 +69,7 @@ TEMPLATES = [
                 "django.contrib.messages.context_processors.messages",
                 "clinic.templatetags.page.page",
             ],
-            "builtins": ["clinic.templatetags.ebbline"],
+            "builtins": ["django.templatetags.static", "clinic.templatetags.ebbline"],
             "loaders": [
                 (
                     "django.template.loaders.cached.Loader",
@@ -151,8 +151,8 @@ DATE_INPUT_FORMATS = ["%Y-%m-%d"]
 FORMAT_MODULE_PATH = ["clinic.formats"]
 
 STATIC_URL = "/static/"
-STATIC_ROOT = BASE_DIR / "staticfiles"
 # Served from where they lie: nothing to collect, nothing from outside.
+STATIC_ROOT = None
 WHITENOISE_USE_FINDERS = True
 WHITENOISE_AUTOREFRESH = False
 WHITENOISE_MAX_AGE = 300

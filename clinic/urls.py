@@ -2,10 +2,28 @@
 
 from django.urls import URLPattern, URLResolver, include, path
 
-from clinic.views import accounts
+from clinic.views import (
+    accounts,
+    clinic_list,
+    eye_course,
+    following,
+    limit_sets,
+    people,
+    prints,
+    visit_sheet,
+)
 
-# Each module of a site's screens is named here once, in the order of the navigation.
-SITE_ROUTES: list[URLPattern | URLResolver] = []
+# Each module of a site's screens is named here once. An eye's address is the most general of those
+# below a code, so it comes last.
+SITE_ROUTES: list[URLPattern | URLResolver] = [
+    *clinic_list.routes,
+    *following.routes,
+    *limit_sets.routes,
+    *prints.routes,
+    *visit_sheet.routes,
+    *people.routes,
+    *eye_course.routes,
+]
 
 urlpatterns = [
     *accounts.routes,

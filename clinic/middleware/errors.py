@@ -9,6 +9,8 @@ from django.core.exceptions import PermissionDenied
 from django.http import Http404, HttpRequest, HttpResponse
 from django.template.loader import render_to_string
 
+from clinic.codes import CodeMistyped
+
 Respond = Callable[[HttpRequest], HttpResponse]
 log = logging.getLogger("clinic.errors")
 
@@ -46,6 +48,9 @@ class ErrorIdMiddleware:
         """Log the id, type and place; show the id. Rights and missing pages are not errors."""
         if isinstance(error, Http404 | PermissionDenied):
             return None
+        if isinstance(error, CodeMistyped):
+            page = render_to_string("errors/mistyped.html", {"error": error}, request)
+            return HttpResponse(page, status=404)
         error_id = secrets.token_hex(4)
         log.error("error %s: %s", error_id, where(error))
         page = render_to_string("errors/500.html", {"error_id": error_id}, request)

@@ -196,9 +196,9 @@ def part_save(
 ) -> PartSaved:
     """Store one part of both eyes, or nothing.
 
-    The same ``request_id`` again answers what the first post stored. Raises ``Conflict`` when an eye
-    has a newer revision than the sheet was opened on, ``ReasonNeeded`` for a correction without a
-    reason, ``PartRefused`` for a day to come.
+    The same ``request_id`` again answers what the first post stored. Raises ``Conflict`` when an
+    eye has a newer revision than the sheet was opened on, ``ReasonNeeded`` for a correction
+    without a reason, ``PartRefused`` for a day to come.
     """
     before = PostedPart.objects.filter(request_id=request_id).select_related("visit").first()
     if before is not None:

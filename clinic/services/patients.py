@@ -74,7 +74,7 @@ def patient_enrol(
         sex=sex,
         birth_year=None if age_90_or_over else birth_year,
         age_90_or_over=age_90_or_over,
-        enrolled_at=stamp["at"],
+        enrolled_at=at.replace(microsecond=0),
         enrolled_by=by,
     )
     rows: list[models.Model] = [patient]

@@ -161,7 +161,7 @@ def _from_reviews(reviews: Sequence[Review], answers: Sequence[Answer]) -> Field
     open_ranks = [item["rank"] for item in items if not item.get("stands")]
     top = next((rank for rank in ranks if rank in open_ranks), "")
     outcomes = list(last.outcomes.values())
-    reading = next((one.reading for one in reversed(reviews) if one.reading), {})
+    reading: Fields = next((one.reading for one in reversed(reviews) if one.reading), {})
     from_day = next((one.visit.day for one in reversed(reviews) if one.reading), None)
     return {
         "open_items": [

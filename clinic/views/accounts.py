@@ -6,6 +6,7 @@ from django.contrib.auth import login, logout
 from django.contrib.auth.decorators import login_not_required
 from django.contrib.auth.forms import AuthenticationForm
 from django.http import HttpRequest, HttpResponse, JsonResponse
+from django.middleware.csrf import get_token
 from django.shortcuts import redirect, render
 from django.urls import path
 from django.utils import timezone
@@ -59,7 +60,9 @@ class SignIn(FormPage):
             login(self.request, user)
             signed_in(by=user, at=timezone.now())
         if is_background(self.request):
-            return JsonResponse({"signed_in": True, "name": str(user)})
+            return JsonResponse(
+                {"signed_in": True, "name": str(user), "token": get_token(self.request)}
+            )
         return redirect(self.wanted() or "home")
 
     def form_invalid(self, form: AuthenticationForm) -> HttpResponse:

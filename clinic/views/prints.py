@@ -11,7 +11,7 @@ from clinic.selectors.access import patient_for, site_for
 from clinic.selectors.evening_content import evening_content
 from clinic.selectors.report_content import report_content
 from clinic.services.prints import list_printed, report_printed
-from clinic.views import clinic_list  # noqa: F401  (it makes the day of an address known)
+from clinic.views import addresses  # noqa: F401 - registers the day in addresses
 
 
 @require_safe

@@ -1,0 +1,99 @@
+"""Stored records as a form's first values, so that a correction starts from what stands."""
+
+from typing import Any
+
+from clinic.models import Decided, EyeRecord, Measured, NextStep, Plan, Treated
+from trends.measures.pressure import shown
+
+
+def initial_of(part: str, record: EyeRecord) -> dict[str, Any]:
+    """Return the form's values of a stored record."""
+    if isinstance(record, Measured):
+        return measured(record)
+    if isinstance(record, Treated):
+        return treated(record)
+    if isinstance(record, NextStep):
+        return ahead(record)
+    if isinstance(record, Decided):
+        names = ("choice", "interval_weeks", "agent", "departs_because")
+        return {name: getattr(record, name) for name in names}
+    raise TypeError(part)
+
+
+def measured(record: Measured) -> dict[str, Any]:
+    """Return a measured record's first values."""
+    tokens = [token for token in record.symptoms.split("+") if token]
+    more = record.more_acuities.first()
+    pressure = record.more_pressures.first()
+    same = (
+        "scan_quality",
+        "irf",
+        "srf",
+        "grader",
+        "acuity",
+        "acuity_notation",
+        "acuity_chart",
+        "acuity_correction",
+        "acuity_distance",
+        "iop_method",
+        "lens",
+        "symptoms_onset",
+    )
+    return {
+        **{name: getattr(record, name) for name in same},
+        "cst": record.cst_um,
+        "scanner": record.scanner_id,
+        "iop": "" if record.iop_tenths is None else shown(record.iop_tenths),
+        "symptoms_none": tokens == ["none"],
+        "symptoms_now": [t for t in tokens if t != "none" and not t.endswith(":gone")],
+        "symptoms_gone": [t.removesuffix(":gone") for t in tokens if t.endswith(":gone")],
+        "acuity2": more.acuity if more else "",
+        "acuity2_notation": more.acuity_notation if more else "",
+        "acuity2_chart": more.acuity_chart if more else "",
+        "acuity2_correction": more.acuity_correction if more else "",
+        "iop2": shown(pressure.iop_tenths) if pressure else "",
+        "iop2_method": pressure.iop_method if pressure else "",
+    }
+
+
+def _mg(dose_ug: int | None) -> str:
+    return "" if dose_ug is None else f"{dose_ug / 1000:g}"
+
+
+def treated(record: Treated) -> dict[str, Any]:
+    """Return a treated record's first values."""
+    second = record.more_treatments.first()
+    same = (
+        "outcome",
+        "agent",
+        "route",
+        "implant",
+        "lot",
+        "laser",
+        "not_given_because",
+        "perception_after",
+        "iop_after_method",
+        "complications",
+    )
+    after = record.iop_after_tenths
+    return {
+        **{name: getattr(record, name) for name in same},
+        "dose": _mg(record.dose_ug),
+        "agent2": second.agent if second else "",
+        "dose2": _mg(second.dose_ug) if second else "",
+        "iop_after": "" if after is None else shown(after),
+    }
+
+
+def ahead(record: NextStep) -> dict[str, Any]:
+    """Return a next record's first values, with the booking made with it."""
+    plan = Plan.objects.filter(set_at_visit=record.visit, eye=record.eye).order_by("-seq").first()
+    return {
+        "due_weeks": record.due_weeks,
+        "due_day": record.due_day,
+        "planned_agent": record.planned_agent,
+        "planned_dose": _mg(record.planned_dose_ug),
+        "check_only": record.check_only,
+        "booked_day": plan.booked_day if plan else None,
+        "booked_time": f"{plan.booked_time:%H:%M}" if plan and plan.booked_time else "",
+    }
