@@ -7,13 +7,12 @@ from typing import Any
 
 from clinic import adapters
 from clinic.models import EyeNow, EyeRecord, Measured, Patient, User, Visit
+from clinic.records import PARTS, newest
 from clinic.selectors.access import Here
-from clinic.services.parts import PARTS, newest
-from clinic.services.projection import SKIP_BACK_DAYS
-from clinic.services.reviews import Found, judge
+from clinic.selectors.judged import Found, judge
 from trends import words
-from trends.comparisons import Comparisons
 from trends.measures.pressure import shown
+from trends.review import comparisons
 from trends.visits import MISSING, day_date
 
 SIDES = (("R", "Right eye"), ("L", "Left eye"))
@@ -176,7 +175,7 @@ def _changes(loaded: adapters.Loaded, one: Found) -> list[str]:
     """Return the plain change of each value since its comparable one."""
     v = loaded.visits
     row = loaded.places.index(one.place)
-    c = Comparisons(v, SKIP_BACK_DAYS)
+    c = comparisons(v, None)
     out = []
     if int(v.cst_um[row]) != MISSING:
         ref = int(c.cst.ref[row])

@@ -13,6 +13,7 @@ from typing import Any
 from django.db import models, transaction
 
 from clinic import codes
+from clinic.canonical import canonical_text
 from clinic.models import (
     ContactEntry,
     Course,
@@ -290,7 +291,7 @@ def digest_of(person: PastPerson) -> dict[str, Any]:
             for visit in person.visits
         ],
     ]
-    text = ledger.canonical_text(content)
+    text = canonical_text(content)
     return {"visits": len(person.visits), "content": hashlib.sha256(text.encode()).hexdigest()}
 
 

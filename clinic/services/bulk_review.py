@@ -35,6 +35,7 @@ from clinic.models import (
     User,
     Visit,
 )
+from clinic.selectors.judged import judge
 from clinic.services import projection, reviews
 
 Rows = dict[type[models.Model], list[Any]]
@@ -84,7 +85,7 @@ def said_of(
     give_provisional_keys(rows)
     records = records_of(rows, tuple(assumed))
     loaded = adapters.from_records(records, {patient.pk: patient for patient in patients})
-    found = reviews.judge(patients, today, loaded.is_newest, loaded)
+    found = judge(patients, today, loaded.is_newest, loaded)
     eyes = {eye.pk: eye for eye in rows.get(Eye, [])}
     visits = {visit.pk: visit for visit in rows.get(Visit, [])}
     written = reviews.rows_of(found, {}, by=by, at=at, why=why)

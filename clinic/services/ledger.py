@@ -8,8 +8,6 @@ the first write of a new day and the seal is printed on reports.
 import datetime as dt
 import hashlib
 import hmac
-import json
-import unicodedata
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field
 from typing import Any
@@ -17,6 +15,7 @@ from typing import Any
 from django.conf import settings
 from django.db import models, transaction
 
+from clinic.canonical import canonical, canonical_text
 from clinic.models import Chain, Entry, Patient, Seal, Site, User
 
 SYSTEM = "system"
@@ -40,28 +39,6 @@ def chain_name(chain: "str | Patient | Site") -> str:
     if isinstance(chain, Site):
         return f"site:{chain.slug}"
     return chain
-
-
-def canonical(value: Any) -> Any:
-    """Return a value as it is digested: ISO dates, UTC seconds, integers, NFC text."""
-    if isinstance(value, dt.datetime):
-        return value.astimezone(dt.UTC).strftime("%Y-%m-%dT%H:%M:%SZ")
-    if isinstance(value, dt.date | dt.time):
-        return value.isoformat()
-    if isinstance(value, str):
-        return unicodedata.normalize("NFC", value)
-    if isinstance(value, dict):
-        return {str(key): canonical(inner) for key, inner in value.items()}
-    if isinstance(value, list | tuple):
-        return [canonical(inner) for inner in value]
-    if value is None or isinstance(value, bool | int):
-        return value
-    return str(value)
-
-
-def canonical_text(value: Any) -> str:
-    """Return canonical JSON: sorted keys, no spaces, no ASCII escapes."""
-    return json.dumps(canonical(value), sort_keys=True, separators=(",", ":"), ensure_ascii=False)
 
 
 def row_digest(row: models.Model) -> str:

@@ -16,12 +16,9 @@ from django.db import IntegrityError, models, transaction
 from django.db.models import Max
 
 from clinic.models import (
-    ContactEntry,
-    Decided,
     Draft,
     Eye,
     EyeRecord,
-    Measured,
     MoreAcuity,
     MorePressure,
     MoreTreatment,
@@ -31,22 +28,15 @@ from clinic.models import (
     Plan,
     PostedPart,
     Revision,
-    Treated,
     User,
     Visit,
 )
+from clinic.records import PARTS, newest
 from clinic.services import ledger
 from clinic.services.projection import eye_now_refresh
 from clinic.services.reviews import review_person
 from trends.errors import EbblineError
 
-PARTS: dict[str, type[EyeRecord]] = {
-    "measured": Measured,
-    "decided": Decided,
-    "treated": Treated,
-    "next": NextStep,
-    "contact": ContactEntry,
-}
 BOOKKEEPING = {"id", "visit_id", "eye_id", "rev", "change", "reason", "at", "by_id", "note_id"}
 CHILDREN: dict[str, tuple[type[models.Model], str]] = {
     "more_acuities": (MoreAcuity, "measured"),
@@ -173,12 +163,6 @@ def note_of(text: str) -> Note | None:
     return Note.objects.create(
         text=text, salt=salt, digest=sha256((salt + text).encode()).hexdigest()
     )
-
-
-def newest(model: type[EyeRecord], visit: Visit, eye: Eye) -> EyeRecord | None:
-    """Return the newest revision of a record, withdrawn or not."""
-    rows = model._default_manager.filter(**{"visit": visit, "eye": eye})
-    return rows.order_by("-rev").first()
 
 
 def part_save(

@@ -9,14 +9,14 @@ from collections.abc import Collection, Iterable, Mapping, Sequence
 from typing import Any
 
 from clinic import adapters
+from clinic.canonical import canonical_text
 from clinic.models import Answer, EyeNow, History, Patient, Plan, Review
-from clinic.services import ledger
 from trends import words
 from trends.comparisons import Comparisons
+from trends.review import comparisons
 from trends.visits import MISSING, Visits
 
 BATCH = 400
-SKIP_BACK_DAYS = 183
 Fields = dict[str, Any]
 
 
@@ -48,7 +48,7 @@ def fields_from(
     rows_of: dict[int, list[int]] = defaultdict(list)
     for row, place in enumerate(loaded.places):
         rows_of[place.eye_id].append(row)
-    compared = Comparisons(loaded.visits, SKIP_BACK_DAYS) if len(loaded.visits) else None
+    compared = comparisons(loaded.visits, None) if len(loaded.visits) else None
     out = {}
     for eye in records.eyes:
         fields = _blank(records, eye)
@@ -294,7 +294,7 @@ def digest_of(fields: Fields) -> str:
     """Return a digest of a projection, to prove it equal to the log."""
     import hashlib
 
-    return hashlib.sha256(ledger.canonical_text(fields).encode()).hexdigest()
+    return hashlib.sha256(canonical_text(fields).encode()).hexdigest()
 
 
 NAMES = [

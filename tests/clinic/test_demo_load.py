@@ -29,8 +29,9 @@ from clinic.models import (
     Visit,
 )
 from clinic.selectors.adopted import adopted_for
+from clinic.selectors.judged import judge
 from clinic.services.projection import differing
-from clinic.services.reviews import changed, judge, newest_reviews
+from clinic.services.reviews import changed, newest_reviews
 
 pytestmark = pytest.mark.django_db
 TODAY = dt.date(2026, 3, 7)
