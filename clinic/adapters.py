@@ -54,6 +54,17 @@ class Place:
     assumed: tuple[str, ...] = ()
 
 
+def with_assumed(
+    working: Mapping[str, Any] | None, assumed: Sequence[str]
+) -> Mapping[str, Any] | None:
+    """Return a working that also says what intake took for granted of its row."""
+    if not working or not assumed:
+        return working
+    said = list(working.get("assumed") or ())
+    said += [one for one in assumed if not any(one in other for other in said)]
+    return {**working, "assumed": said}
+
+
 @dataclass
 class Loaded:
     """Visits with the places behind their rows, in the order of ``visits`` rows."""

@@ -83,6 +83,7 @@ def _eye(loaded: Loaded, reviewed: Reviewed, eye_id: int) -> EyeSaid:
 
 def _bound(loaded: Loaded, row: Row) -> SaidRow:
     place = loaded.places[row["row"]]
+    row = {**row, "working": adapters.with_assumed(row["working"], place.assumed)}
     return SaidRow(row, place.visit_id, place.kind)
 
 
