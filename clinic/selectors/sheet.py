@@ -127,9 +127,10 @@ def live_comparison(
     visit = _visit_in(records, patient, day, kind)
     eyes = {eye["side"]: key for key, eye in records.eyes.items()}
     for side, values in typed.items():
-        blank = {name: values.get(name) for name in adapters.MEASURED}
-        texts = {n: (blank[n] or "") for n in blank if n not in ("cst_um", "iop_tenths")}
-        records.measured[visit, eyes[side]] = {**blank, **texts, "pk": 0}
+        cells = {name: values.get(name) or "" for name in adapters.MEASURED}
+        numbers = {name: values.get(name) for name in ("cst_um", "iop_tenths")}
+        row = {**cells, **numbers, "one_scanner_assumed": False, "pk": 0}
+        records.measured[visit, eyes[side]] = row
     loaded = adapters.from_records(records, {patient.pk: patient})
     found = judge([patient], day, lambda place: place.visit_id == visit, loaded)
     sides = {key: side for side, key in eyes.items()}

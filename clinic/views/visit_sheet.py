@@ -13,6 +13,7 @@ from django.urls import path
 from django.utils import timezone
 from django.views.decorators.http import require_POST, require_safe
 
+from clinic.forms.fields import sentence
 from clinic.forms.initial import initial_of
 from clinic.forms.sheet import FORMS, EyeForm, PostForm
 from clinic.models import Patient, Revision, Visit
@@ -128,16 +129,19 @@ def save(
     post = PostForm(request.POST)
     valid = all([form.is_valid() for form in forms.values()]) and post.is_valid()
     bound = {part: forms}
+    reason = request.POST.get("reason", "")
     if not valid or any(form.questions for form in forms.values()):
-        context = context_of(here, patient, day, kind, bound, refused=part)
+        context = context_of(here, patient, day, kind, bound, refused=part, reason=reason)
         return render(request, "visit_sheet/sheet.html", context, status=422)
     try:
         saved = _store(here, patient, day, kind, part, sheet, forms, post)
     except ReasonNeeded as error:
-        context = context_of(here, patient, day, kind, bound, refused=part, reason_error=error)
+        more = {"refused": part, "reason_error": sentence(error), "reason": reason}
+        context = context_of(here, patient, day, kind, bound, **more)
         return render(request, "visit_sheet/sheet.html", context, status=422)
     except PartRefused as error:
-        context = context_of(here, patient, day, kind, bound, refused=part, part_error=error)
+        more = {"refused": part, "part_error": sentence(error), "reason": reason}
+        context = context_of(here, patient, day, kind, bound, **more)
         return render(request, "visit_sheet/sheet.html", context, status=422)
     except Conflict as conflict:
         return _conflict(request, here, patient, day, kind, part, forms, conflict)
@@ -237,11 +241,26 @@ def _both(theirs: EyeForm, mine: EyeForm) -> list[dict[str, Any]]:
         one = theirs[name].value()
         other = mine[name].value()
         if one or other:
-            label = field.label or name.replace("_", " ")
             rows.append(
-                {"label": label, "theirs": one, "mine": other, "same": str(one) == str(other)}
+                {
+                    "label": (field.label or name).replace("_", " "),
+                    "theirs": in_words(field, one),
+                    "mine": in_words(field, other),
+                    "same": str(one) == str(other),
+                }
             )
     return rows
+
+
+def in_words(field: Any, value: Any) -> str:
+    """Return a field's value as the page shows it: the words of a choice, not its code."""
+    values = value if isinstance(value, list) else [value]
+    named = {str(getattr(key, "value", key)): str(words) for key, words in _choices(field)}
+    return ", ".join(named.get(str(one), str(one)) for one in values if one not in (None, ""))
+
+
+def _choices(field: Any) -> list[tuple[Any, Any]]:
+    return list(getattr(field, "choices", []))
 
 
 @require_POST

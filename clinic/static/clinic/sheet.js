@@ -89,16 +89,11 @@
       button.disabled = true;
       window.ebbline.send(form.action, new FormData(form)).then(function (answer) {
         form.dataset.typed = "";
-        if (answer.redirected && answer.ok) {
-          // The redirect's own anchor is lost by fetch; go to the part that was saved.
-          const anchor = "#part-" + form.dataset.part;
-          history.replaceState(null, "", new URL(answer.url).pathname + anchor);
-          window.location.reload();
-          return null;
-        }
+        // The redirect's own anchor is lost by fetch; stay at the part that was saved.
+        const stored = answer.redirected && answer.ok;
+        if (stored) history.replaceState(null, "", new URL(answer.url).pathname + "#part-" + form.dataset.part);
         return answer.text();
       }).then(function (text) {
-        if (text === null || text === undefined) return;
         document.open();
         document.write(text);
         document.close();
