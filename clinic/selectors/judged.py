@@ -7,7 +7,7 @@ import datetime as dt
 import hashlib
 from collections import defaultdict
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 from clinic import adapters
@@ -17,11 +17,12 @@ from clinic.selectors.adopted import Adopted, adopted_for, of_cause
 from trends import words
 from trends.limits import LimitSet
 from trends.regimens import registry as regimens
-from trends.review import review
+from trends.review import Reviewed, review
 from trends.rules import registry as rules
 from trends.verdict import RANK_WORDS, RANKS
-from trends.wording import VerdictRow, verdict_rows
+from trends.wording import VerdictRow, fellow_rows, verdict_rows
 
+NOTHING_DIGEST = "nothing"
 KEPT = ("raised", "still", "could_not_tell")
 NEVER_STORED = frozenset(
     name for name, module in rules.by_id().items() if module.INFO.shape == "standing"
@@ -68,10 +69,7 @@ def as_stored(row: VerdictRow, assumed: Sequence[str] = ()) -> dict[str, Any]:
     stored = {name: value for name, value in vars(row).items() if name not in ("row", "person")}
     stored["missing"] = list(row.missing)
     stored["digest"] = item_digest(row)
-    if assumed and row.working:
-        said = list(row.working.get("assumed") or ())
-        said += [one for one in assumed if not any(one in other for other in said)]
-        stored["working"] = {**row.working, "assumed": said}
+    stored["working"] = adapters.with_assumed(row.working, assumed)
     return stored
 
 
@@ -120,10 +118,8 @@ def _judge_with(
     by_row: dict[int, list[VerdictRow]] = defaultdict(list)
     for one in verdict_rows(reviewed, rows, standing=False):
         by_row[one.row].append(one)
-    fellows = _fellow_rows(reviewed, loaded, rows)
-    return [
-        _found(loaded, reviewed, limits, row, by_row[row] + fellows.get(row, [])) for row in rows
-    ]
+    own = [_found(loaded, reviewed, limits, row, by_row[row]) for row in rows]
+    return own + _fellows(reviewed, loaded, limits, set(rows))
 
 
 def stored_rules() -> set[str]:
@@ -131,19 +127,36 @@ def stored_rules() -> set[str]:
     return {*rules.by_id(), *regimens.by_id()} - NEVER_STORED
 
 
-def _fellow_rows(
-    reviewed: Any, loaded: adapters.Loaded, rows: list[int]
-) -> dict[int, list[VerdictRow]]:
-    """Return fellow alarms without a row of their own, by the row of the alarmed eye."""
-    from trends.wording import fellow_rows
-
+def _fellows(
+    reviewed: Reviewed, loaded: adapters.Loaded, limits: LimitSet | None, rows: set[int]
+) -> list[Found]:
+    """Return what an alarm raises of a fellow eye that has no row of its own at that visit."""
     judged = reviewed.judged.get("alarm_symptoms")
-    found: dict[int, list[VerdictRow]] = defaultdict(list)
     pairs = judged.extra.get("fellow_of", []) if judged is not None else []
-    for (alarm, _eye), one in zip(pairs, fellow_rows(reviewed), strict=True):
-        if alarm in rows:
-            found[alarm].append(one)
+    found = []
+    for (alarm, eye), one in zip(pairs, fellow_rows(reviewed), strict=True):
+        if alarm not in rows:
+            continue
+        place = replace(
+            loaded.places[alarm], eye_id=loaded.places[int(loaded.visits.offsets[eye])].eye_id
+        )
+        found.append(
+            Found(
+                place=place,
+                inputs_digest=loaded.digests[alarm],
+                limits=limits,
+                outcomes={one.rule: one.outcome},
+                raised=[as_stored(one, place.assumed)],
+                reading={},
+                top_rank=one.rank,
+            )
+        )
     return found
+
+
+def nothing(place: adapters.Place) -> Found:
+    """Return that nothing is said of an eye at a visit any more."""
+    return Found(place, NOTHING_DIGEST, None, {}, [], {}, "")
 
 
 def _found(
@@ -160,7 +173,7 @@ def _found(
         place=loaded.places[row],
         inputs_digest=loaded.digests[row],
         limits=limits,
-        outcomes={one.rule: one.outcome for one in own if one.row == row and one.outcome},
+        outcomes={one.rule: one.outcome for one in own if one.outcome},
         raised=[as_stored(one, loaded.places[row].assumed) for one in own if one.outcome in KEPT],
         reading=_reading(reviewed, row, readings),
         top_rank=RANK_WORDS[top],

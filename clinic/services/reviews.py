@@ -11,7 +11,7 @@ from django.db import transaction
 
 from clinic import adapters
 from clinic.models import Patient, Review, User
-from clinic.selectors.judged import Found, judge
+from clinic.selectors.judged import Found, judge, nothing
 from trends import ENGINE_VERSION
 from trends.wording import set_names
 
@@ -24,7 +24,8 @@ def newest_reviews(patients: Collection[int]) -> dict[tuple[int, int], Review]:
     found: dict[tuple[int, int], Review] = {}
     for start in range(0, len(ids), BATCH):
         rows = Review.objects.filter(visit__patient_id__in=ids[start : start + BATCH])
-        for row in rows.order_by("seq").defer("raised", "reading", "outcomes"):
+        light = rows.select_related("visit").defer("raised", "reading", "outcomes")
+        for row in light.order_by("seq"):
             found[row.visit_id, row.eye_id] = row
     return found
 
@@ -90,8 +91,21 @@ def review_person(
     """Review a person's visits of both eyes from a day on; inside the caller's transaction."""
     found = judge([patient], max(today, from_day), lambda place: place.day >= from_day)
     newest = newest_reviews([patient.pk])
+    found += vanished(found, newest, from_day)
     rows = rows_of(changed(found, newest), newest, by=by, at=at, why=why)
     return Review.objects.bulk_create(rows)
+
+
+def vanished(
+    found: Sequence[Found], newest: Mapping[tuple[int, int], Review], from_day: dt.date
+) -> list[Found]:
+    """Return that nothing is said any more where all that was recorded was taken back."""
+    said = {(one.place.visit_id, one.place.eye_id) for one in found}
+    return [
+        nothing(adapters.Place(visit, eye, row.visit.patient_id, row.visit.day, row.visit.kind))
+        for (visit, eye), row in newest.items()
+        if row.visit.day >= from_day and (visit, eye) not in said
+    ]
 
 
 def review_latest(
