@@ -97,7 +97,9 @@ def test_a_wrong_python_is_named(entry: ModuleType, monkeypatch: pytest.MonkeyPa
 
 
 def demo(home: Path, *arguments: str) -> subprocess.CompletedProcess[str]:
-    clean = {k: v for k, v in os.environ.items() if not k.startswith(("EBBLINE", "DATABASE", "DJANGO"))}
+    clean = {
+        k: v for k, v in os.environ.items() if not k.startswith(("EBBLINE", "DATABASE", "DJANGO"))
+    }
     return subprocess.run(
         [sys.executable, "manage.py", "demo", *arguments],
         cwd=ROOT,
