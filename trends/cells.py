@@ -15,7 +15,7 @@ from trends.measures.ranges import ranges
 from trends.visits import day_number
 
 Reader = Callable[[str], int]
-ISO = re.compile(r"\d{4}-\d{2}-\d{2}")
+ISO = re.compile(r"[0-9]{4}-[0-9]{2}-[0-9]{2}")
 
 
 def refuse(what: str, text: str, allowed: str, why: str) -> EbblineError:
@@ -48,7 +48,7 @@ def closed(list_of_words: tuple[str, ...], what: str) -> Reader:
 
 def birth_year(text: str) -> int:
     """Read a year of birth."""
-    if not re.fullmatch(r"(19|20)\d{2}", text):
+    if not re.fullmatch(r"(19|20)[0-9]{2}", text):
         raise refuse("year of birth", text, "a year such as 1958", "only the year is kept")
     return int(text)
 
@@ -57,7 +57,7 @@ def dose_ug(text: str) -> int:
     """Read a dose in mg as whole µg."""
     bounds = ranges("dose_ug")
     plain = text.replace(",", ".")
-    if not re.fullmatch(r"\d{1,2}(\.\d{1,3})?", plain):
+    if not re.fullmatch(r"[0-9]{1,2}(\.[0-9]{1,3})?", plain):
         raise refuse("dose", text, bounds.text("allowed"), "a dose is a number of mg")
     whole, _, part = plain.partition(".")
     value = int(whole) * 1000 + int(part.ljust(3, "0") or 0)

@@ -75,7 +75,7 @@ def dose_ug(text: str) -> int:
     """Read a dose in mg (comma or point) as whole µg."""
     bounds = ranges("dose_ug")
     plain = text.replace(",", ".").removesuffix("mg").strip()
-    if re.fullmatch(r"\d{1,2}(\.\d{1,3})?", plain):
+    if re.fullmatch(r"[0-9]{1,2}(\.[0-9]{1,3})?", plain):
         whole, _, part = plain.partition(".")
         value = int(whole) * 1000 + int(part.ljust(3, "0") or 0)
         if bounds.number("least") <= value <= bounds.number("most"):
@@ -88,7 +88,7 @@ def whole_number(name: str) -> Callable[[str], int]:
 
     def read(text: str) -> int:
         bounds = ranges(name)
-        if re.fullmatch(r"\d{1,5}", text):
+        if re.fullmatch(r"[0-9]{1,5}", text):
             value = int(text)
             if bounds.number("least") <= value <= bounds.number("most"):
                 return value
@@ -104,7 +104,7 @@ def birth_year(today: dt.date) -> Callable[[str], int]:
         bounds = ranges("birth_year")
         least = today.year - bounds.number("oldest_age")
         most = today.year - bounds.number("youngest_age")
-        if re.fullmatch(r"\d{4}", text) and least <= int(text) <= most:
+        if re.fullmatch(r"[0-9]{4}", text) and least <= int(text) <= most:
             return int(text)
         raise EbblineError(
             "year of birth",

@@ -22,11 +22,13 @@ SNAP_E4 = 60
 """A printed label is at most 0.0051 logMAR off its line; 0.006 takes in every standard label and
 none of the others (reference table of ISO 8596 line sizes)."""
 
-FRACTION = re.compile(r"^(\d{1,4}(?:[.,]\d+)?)\s*/\s*(\d{1,5}(?:[.,]\d+)?)\s*([+-]\s*\d+)?$")
-NUMBER = re.compile(r"^[+-]?\d{1,3}(?:[.,]\d{1,4})?$")
+FRACTION = re.compile(
+    r"^([0-9]{1,4}(?:[.,][0-9]+)?)\s*/\s*([0-9]{1,5}(?:[.,][0-9]+)?)\s*([+-]\s*[0-9]+)?$"
+)
+NUMBER = re.compile(r"^[+-]?[0-9]{1,3}(?:[.,][0-9]{1,4})?$")
 OFF_CHART = re.compile(
     r"^(NLP|LP|HM|CF)(?:\s+(with|without)\s+projection)?"
-    r"(?:\s+(?:at\s+)?(\d+(?:[.,]\d+)?)\s*(m|cm|ft))?$",
+    r"(?:\s+(?:at\s+)?([0-9]+(?:[.,][0-9]+)?)\s*(m|cm|ft))?$",
     re.IGNORECASE,
 )
 
@@ -148,7 +150,7 @@ def _letters(notation: str, text: str, chart: str) -> Acuity:
         raise refuse(
             notation, text, "an ETDRS chart", "A Snellen chart's lines have unequal letters."
         )
-    if not re.fullmatch(r"\d{1,3}", text) or int(text) > 100:
+    if not re.fullmatch(r"[0-9]{1,3}", text) or int(text) > 100:
         raise refuse(notation, text, "whole letters 0 to 100", "85 letters are 20/20.")
     return _whole(notation, text, chart, e4_of_letters(int(text)), letters=int(text))
 

@@ -9,7 +9,7 @@ import re
 from trends.errors import EbblineError
 from trends.measures.ranges import ranges
 
-TENTHS = re.compile(r"^\d{1,3}(?:[.,]\d)?$")
+TENTHS = re.compile(r"^[0-9]{1,3}(?:[.,][0-9])?$")
 
 
 class PressureRefused(EbblineError):

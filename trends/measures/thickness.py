@@ -21,9 +21,9 @@ def micrometres(text: str) -> int:
     """Return a typed CST in whole µm; raises ``ThicknessRefused`` (mm and decimals too)."""
     bounds = ranges("cst_um")
     plain = text.strip()
-    whole = int(plain) if re.fullmatch(r"\d{1,6}", plain) else None
+    whole = int(plain) if re.fullmatch(r"[0-9]{1,6}", plain) else None
     if whole is None or not bounds.number("least") <= whole <= bounds.number("most"):
-        looks_like_mm = re.fullmatch(r"[01]?[.,]\d{2,3}", plain) is not None
+        looks_like_mm = re.fullmatch(r"[01]?[.,][0-9]{2,3}", plain) is not None
         why = "This looks like millimetres." if looks_like_mm else bounds.text("why").capitalize()
         raise ThicknessRefused(
             "CST", text, bounds.text("allowed"), why + ".", "Type whole µm from the scan."
