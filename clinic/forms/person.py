@@ -150,6 +150,10 @@ class ReasonForm(forms.Form):
 
     reason = forms.CharField(required=False, max_length=280, label="Reason")
 
+    def __init__(self, *args: Any, **kwargs: Any) -> None:
+        super().__init__(*args, **kwargs)
+        self.order_fields([*(name for name in self.fields if name != "reason"), "reason"])
+
 
 class HistoryPageForm(HistoryForm):
     """The history of an eye, entered later or corrected."""
