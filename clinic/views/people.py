@@ -8,6 +8,7 @@ from django.http import Http404, HttpRequest, HttpResponse
 from django.shortcuts import redirect, render
 from django.urls import path
 from django.utils import timezone
+from django.views.decorators.http import require_safe
 
 from clinic.forms.fields import sentence
 from clinic.forms.person import (
@@ -66,6 +67,7 @@ def enrol(request: HttpRequest, slug: str) -> HttpResponse:
     return render(request, "people/enrol.html", context, status=status)
 
 
+@require_safe
 def person(request: HttpRequest, slug: str, code: str) -> HttpResponse:
     """Show a person: year of birth, sex, both eyes' causes and last-seen day, and what to do."""
     here = site_for(request.user, slug)
@@ -214,6 +216,7 @@ def plan(request: HttpRequest, slug: str, code: str, side: str) -> HttpResponse:
     return _page(request, here, eye.patient, eye, "Plan and booking", form)
 
 
+@require_safe
 def find(request: HttpRequest, slug: str) -> HttpResponse:
     """Go to the person of a typed code; a mistyped one is told before any look-up."""
     here = site_for(request.user, slug)
