@@ -79,6 +79,9 @@ def database() -> dict[str, object]:
             "because Ebbline is tested on those two. Unset it to use the local file."
         )
     name = url.path if url.scheme == "sqlite" else str(home() / "ebbline.sqlite3")
+    if name:
+        # Made here, so that it is the owner's alone from its first byte on.
+        os.close(os.open(name, os.O_RDWR | os.O_CREAT, 0o600))
     return {
         "ENGINE": "django.db.backends.sqlite3",
         "NAME": name,

@@ -1,9 +1,14 @@
 """Serving the demo on this machine: one worker, a few threads, loopback only."""
 
+import os
 import socket
-from typing import Any
+import sys
+
+from clinic.local import ROOT
 
 HOST = "127.0.0.1"
+# One small worker: the database allows one writer at a time anyway.
+OPTIONS = ("--workers", "1", "--threads", "4", "--log-level", "warning", "--no-control-socket")
 
 
 def port_is_free(port: int) -> bool:
@@ -18,28 +23,7 @@ def port_is_free(port: int) -> bool:
 
 
 def serve(port: int) -> None:
-    """Serve until stopped."""
-    from django.core.wsgi import get_wsgi_application
-    from gunicorn.app.base import BaseApplication
-
-    class Local(BaseApplication):  # type: ignore[misc]
-        """Gunicorn, configured here instead of by a file."""
-
-        def load_config(self) -> None:
-            """Set a single small worker; the database allows one writer at a time anyway."""
-            options: dict[str, Any] = {
-                "bind": f"{HOST}:{port}",
-                "workers": 1,
-                "threads": 4,
-                "loglevel": "warning",
-                "control_socket_disable": True,
-            }
-            for name, setting in options.items():
-                if name in self.cfg.settings:
-                    self.cfg.set(name, setting)
-
-        def load(self) -> Any:
-            """Return the application."""
-            return get_wsgi_application()
-
-    Local().run()
+    """Become the server; what loading the demo left in memory is gone with this process."""
+    server = [sys.executable, "-m", "gunicorn", "clinic.wsgi:application"]
+    where = ["--bind", f"{HOST}:{port}", "--chdir", str(ROOT)]
+    os.execv(sys.executable, [*server, *where, *OPTIONS])  # noqa: S606

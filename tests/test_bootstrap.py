@@ -118,7 +118,7 @@ def test_a_taken_port_is_told_before_anything_is_made(tmp_path: Path) -> None:
     assert answer.returncode == 1
     assert f"Port {port} on 127.0.0.1 is taken" in answer.stderr
     assert "--port" in answer.stderr
-    assert not (tmp_path / "home" / "ebbline.sqlite3").exists()
+    assert (tmp_path / "home" / "ebbline.sqlite3").stat().st_size == 0
 
 
 def test_a_second_start_keeps_data_and_new_passwords_are_asked_for(tmp_path: Path) -> None:
