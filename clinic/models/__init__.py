@@ -1,7 +1,7 @@
 """The tables, one file per concept. ``APPEND_ONLY`` lists those the triggers guard."""
 
 from clinic.models.append_only import AppendOnly, Revision
-from clinic.models.intake import IntakeFile, IntakeMapping
+from clinic.models.intake import IntakeFile
 from clinic.models.ledger import Chain, Entry, Seal
 from clinic.models.limit_sets import Adoption, AdoptionConfirmed, LimitSetText
 from clinic.models.patients import (
@@ -13,7 +13,7 @@ from clinic.models.patients import (
     Patient,
     PatientStatus,
 )
-from clinic.models.people import LastSeen, Membership, User
+from clinic.models.people import Membership, User
 from clinic.models.plans import Plan
 from clinic.models.raised import Answer, EyeNow, Review
 from clinic.models.sites import ClinicDay, Scanner, Site
@@ -83,8 +83,6 @@ __all__ = [
     "EyeState",
     "History",
     "IntakeFile",
-    "IntakeMapping",
-    "LastSeen",
     "LimitSetText",
     "Measured",
     "Membership",

@@ -1,4 +1,4 @@
-"""Files taken in, and remembered column mappings."""
+"""Files taken in."""
 
 from django.db import models
 
@@ -27,25 +27,3 @@ class IntakeFile(AppendOnly):
 
     def __str__(self) -> str:
         return f"{self.label or self.sha256[:12]}"
-
-
-class IntakeMapping(models.Model):
-    """A site's remembered mapping of columns, by the header it was made for.
-
-    No row means the header is new. Personal data: none.
-    """
-
-    site = models.ForeignKey(Site, on_delete=models.PROTECT, related_name="intake_mappings")
-    header_digest = models.CharField(max_length=64)
-    mapping = models.JSONField(default=dict)
-    at = models.DateTimeField()
-
-    class Meta:
-        constraints = [
-            models.UniqueConstraint(
-                fields=["site", "header_digest"], name="intake_mapping_once_a_header"
-            ),
-        ]
-
-    def __str__(self) -> str:
-        return self.header_digest[:12]

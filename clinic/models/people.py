@@ -48,16 +48,3 @@ class Membership(models.Model):
 
     def __str__(self) -> str:
         return f"{self.user} {self.get_role_display()} at {self.site}"
-
-
-class LastSeen(models.Model):
-    """When a person was last active, written at most once a minute.
-
-    A missing row means never signed in. Personal data: staff only.
-    """
-
-    user = models.OneToOneField(User, on_delete=models.PROTECT, related_name="last_seen")
-    at = models.DateTimeField()
-
-    def __str__(self) -> str:
-        return f"{self.user} {self.at:%Y-%m-%d %H:%M}"
