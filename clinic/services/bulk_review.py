@@ -37,6 +37,7 @@ from clinic.models import (
 )
 from clinic.selectors.judged import judge
 from clinic.services import projection, reviews
+from clinic.services.open_items import Fields
 
 Rows = dict[type[models.Model], list[Any]]
 VISIT_COLUMNS = ("patient_id", "day", "kind", "entry", "from_intake_id")
@@ -54,7 +55,7 @@ class Said:
     """Unsaved reviews of each eye's newest visit, and each eye's projection without keys."""
 
     reviews: list[Review] = field(default_factory=list)
-    fields: list[tuple[Eye, projection.Fields]] = field(default_factory=list)
+    fields: list[tuple[Eye, Fields]] = field(default_factory=list)
     visits: dict[int, Visit] = field(default_factory=dict)
 
     def eye_now(self) -> list[EyeNow]:

@@ -21,8 +21,9 @@ from clinic.models import (
     Visit,
 )
 from clinic.services import ledger
+from clinic.services.open_items import is_alarm
 from clinic.services.parts import PartRefused
-from clinic.services.projection import eye_now_refresh, is_alarm
+from clinic.services.projection import eye_now_refresh
 
 DRAFT_HOURS = 24
 
