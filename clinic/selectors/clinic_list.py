@@ -56,8 +56,8 @@ class Item:
 
     @property
     def is_open(self) -> bool:
-        """Say whether it still waits for an answer (or its answer was to something else)."""
-        return not self.answer.get("stands")
+        """Say whether it waits: unanswered, answered on other evidence, or its day has come."""
+        return not self.answer.get("stands") or bool(self.answer.get("is_due"))
 
 
 @dataclass(frozen=True)
@@ -251,8 +251,9 @@ def _line(
     items = [item for item in now.open_items if "rule" in item]
     counted = [item["counts"] for item in now.open_items if "counts" in item]
     counts: Mapping[str, int] = counted[0] if counted else {}
-    stored = [_item(item, named) for item in items]
-    facts = [_item({**item, "visit_day": None}, named) for item in standing]
+    asked = max(day, today)
+    stored = [_item(item, named, asked) for item in items]
+    facts = [_item({**item, "visit_day": None}, named, asked) for item in standing]
     shown = [item for item in stored if item.rank != "keep_in_mind"]
     since = (day - now.last_treated_day).days if now.last_treated_day else None
     return EyeLine(
@@ -274,8 +275,13 @@ def _line(
     )
 
 
-def _item(item: Mapping[str, Any], named: Mapping[str, str]) -> Item:
+def _item(item: Mapping[str, Any], named: Mapping[str, str], asked: dt.date) -> Item:
     day = item.get("visit_day")
+    names = ("answer", "answered_by", "look_again_on", "stands")
+    answer = {name: item[name] for name in names if name in item}
+    # "Look again" closes an item only until the day it named.
+    if again := answer.get("look_again_on"):
+        answer["is_due"] = dt.date.fromisoformat(again) <= asked
     return Item(
         rule=item["rule"],
         title=named.get(item["rule"], item["rule"]),
@@ -285,9 +291,7 @@ def _item(item: Mapping[str, Any], named: Mapping[str, str]) -> Item:
         from_day=dt.date.fromisoformat(day) if day else None,
         visit_kind=item.get("visit_kind", ""),
         alarm=bool(item.get("alarm")),
-        answer={
-            k: item[k] for k in ("answer", "answered_by", "look_again_on", "stands") if k in item
-        },
+        answer=answer,
     )
 
 
