@@ -165,11 +165,11 @@ def eye_now_refresh(*, patients: Sequence[Patient]) -> None:
 
 
 def differing(patients: Sequence[Patient]) -> list[int]:
-    """Return the eyes whose stored projection differs from the log."""
-    stored = {
-        now.eye_id: now.digest
-        for now in EyeNow.objects.filter(eye__patient__in=[p.pk for p in patients])
-    }
-    return [
-        eye for eye, fields in fields_of(patients).items() if stored.get(eye) != digest_of(fields)
-    ]
+    """Return the eyes whose stored projection differs from the log in any column."""
+    rows = EyeNow.objects.filter(eye__patient__in=[patient.pk for patient in patients])
+    stored = {now.eye_id: _columns(now) for now in rows}
+    return [now.eye_id for now in rows_for(patients) if stored.get(now.eye_id) != _columns(now)]
+
+
+def _columns(now: EyeNow) -> list[Any]:
+    return [getattr(now, name) for name in NAMES]
