@@ -7,6 +7,7 @@ import datetime as dt
 import hashlib
 from collections import defaultdict
 from collections.abc import Collection, Iterable, Mapping, Sequence
+from typing import Any
 
 from clinic import adapters
 from clinic.canonical import canonical_text
