@@ -6,6 +6,7 @@ from typing import Any
 
 from django.db import models, transaction
 from django.db.models import Max
+from django.utils import timezone
 
 from clinic.models import (
     Answer,
@@ -21,9 +22,14 @@ from clinic.models import (
     Visit,
 )
 from clinic.services import ledger
+from clinic.services.bookings import newest_plan
+from clinic.services.locks import locked
 from clinic.services.open_items import is_alarm
-from clinic.services.parts import PartRefused
+from clinic.services.part_checks import day_checked, word_checked
+from clinic.services.person_checks import plan_checked
 from clinic.services.projection import eye_now_refresh
+from clinic.services.refusals import PartRefused
+from clinic.services.revisions import repeats
 
 DRAFT_HOURS = 24
 
@@ -38,6 +44,11 @@ def plan_record(
     *, eye: Eye, values: Mapping[str, Any], by: User, at: dt.datetime, reason: str = ""
 ) -> Plan:
     """Record a due day, a booking or what became of one; rebooking never resets lateness."""
+    plan_checked({**values})
+    locked(eye.patient)
+    last = newest_plan(eye)
+    if last is not None and last.reason == reason and repeats(last, values):
+        return last
     plan = Plan.objects.create(
         eye=eye,
         seq=_next(Plan, eye=eye),
@@ -55,8 +66,17 @@ def plan_record(
 def day_close(
     *, site: Site, day: dt.date, absent: Sequence[Eye], by: User, at: dt.datetime
 ) -> ClinicDay:
-    """Close a clinic day; eyes that were booked and did not come keep their due day."""
+    """Close a clinic day; eyes that were booked and did not come keep their due day.
+
+    Only those still booked for the day and not seen on it are noted as absent. A day that is closed
+    already stays as it was; one to come is refused.
+    """
+    day_checked("day to close", day, timezone.localdate(at))
     stamp = {"by": by, "at": at.replace(microsecond=0)}
+    Site.objects.select_for_update().only("pk").get(pk=site.pk)
+    last = ClinicDay.objects.filter(site=site, day=day).order_by("-seq").first()
+    if last is not None and last.state == ClinicDay.State.CLOSED:
+        return last
     closed = ClinicDay.objects.create(
         site=site,
         day=day,
@@ -64,27 +84,38 @@ def day_close(
         state=ClinicDay.State.CLOSED,
         **stamp,
     )
-    for eye in absent:
-        last = Plan.objects.filter(eye=eye).order_by("-seq").first()
-        if last is None:
-            continue
-        plan = Plan.objects.create(
-            eye=eye,
-            seq=last.seq + 1,
-            due_day=last.due_day,
-            planned_agent=last.planned_agent,
-            planned_dose_ug=last.planned_dose_ug,
-            check_only=last.check_only,
-            attendance=Plan.Attendance.DID_NOT_COME,
-            reason=f"booked for {day.isoformat()}",
-            **stamp,
-        )
-        ledger.record(chain=eye.patient, action="did not come", by=by, at=at, rows=[plan])
+    missed = {eye: _absent(eye, site, day, stamp) for eye in absent}
+    for eye, plan in missed.items():
+        if plan is not None:
+            ledger.record(chain=eye.patient, action="did not come", by=by, at=at, rows=[plan])
     ledger.record(
         chain=site, action="day closed", subject=day.isoformat(), by=by, at=at, rows=[closed]
     )
-    eye_now_refresh(patients=list({eye.patient for eye in absent}))
+    eye_now_refresh(patients=list({eye.patient for eye, plan in missed.items() if plan}))
     return closed
+
+
+def _absent(eye: Eye, site: Site, day: dt.date, stamp: Mapping[str, Any]) -> Plan | None:
+    """Store that a booked eye did not come; None when it came, or is booked otherwise by now."""
+    if locked(eye.patient).site_id != site.pk:
+        raise PartRefused(
+            "eye", "another clinic's", "this clinic's own", "Its day is closed there.", ""
+        )
+    last = newest_plan(eye)
+    seen = Visit.objects.filter(patient=eye.patient, day=day).exclude(kind=Visit.Kind.CONTACT)
+    if last is None or last.booked_day != day or seen.exists():
+        return None
+    return Plan.objects.create(
+        eye=eye,
+        seq=last.seq + 1,
+        due_day=last.due_day,
+        planned_agent=last.planned_agent,
+        planned_dose_ug=last.planned_dose_ug,
+        check_only=last.check_only,
+        attendance=Plan.Attendance.DID_NOT_COME,
+        reason=f"booked for {day.isoformat()}",
+        **stamp,
+    )
 
 
 @transaction.atomic
@@ -92,6 +123,10 @@ def tick_set(
     *, patient: Patient, day: dt.date, ticked: bool, by: User, at: dt.datetime
 ) -> RecordDone:
     """Tick a person on a day's list, or take the tick back."""
+    locked(patient)
+    last = RecordDone.objects.filter(patient=patient, day=day).order_by("-seq").first()
+    if last is not None and last.ticked == ticked:
+        return last
     row = RecordDone.objects.create(
         patient=patient,
         day=day,
@@ -136,6 +171,8 @@ def answer_record(
 
     "Look again" needs a later day and isn't offered for an alarm present now.
     """
+    word_checked("answer", answer, Answer.Kind.values)
+    locked(eye.patient)
     row = raised_row(visit, eye, rule)
     if answer == Answer.Kind.LOOK_AGAIN:
         if is_alarm(row):
@@ -154,17 +191,19 @@ def answer_record(
                 "It says when this comes back.",
                 "Choose a later day.",
             )
+    values = {
+        "inputs_digest": row["digest"],
+        "answer": answer,
+        "look_again_on": look_again_on if answer == Answer.Kind.LOOK_AGAIN else None,
+        "reason": reason,
+        "by_id": by.pk,
+    }
+    of = {"visit": visit, "eye": eye, "rule": rule}
+    last = Answer.objects.filter(**of).order_by("-seq").first()
+    if last is not None and repeats(last, values):
+        return last
     stored = Answer.objects.create(
-        visit=visit,
-        eye=eye,
-        rule=rule,
-        seq=_next(Answer, visit=visit, eye=eye, rule=rule),
-        inputs_digest=row["digest"],
-        answer=answer,
-        look_again_on=look_again_on if answer == Answer.Kind.LOOK_AGAIN else None,
-        reason=reason,
-        by=by,
-        at=at.replace(microsecond=0),
+        **of, seq=_next(Answer, **of), at=at.replace(microsecond=0), **values
     )
     ledger.record(
         chain=eye.patient,

@@ -35,8 +35,8 @@ def children_checked(children: Mapping[str, Sequence[Mapping[str, Any]]]) -> dic
     """Return further acuities, pressures and treatments, checked like the first ones."""
     checks: dict[str, Callable[[Values], Values]] = {
         "more_acuities": _acuity,
-        "more_pressures": lambda one: _within(one, "iop_tenths", "IOP"),
-        "more_treatments": lambda one: _within(one, "dose_ug", "dose"),
+        "more_pressures": lambda one: within(one, "iop_tenths", "IOP"),
+        "more_treatments": lambda one: within(one, "dose_ug", "dose"),
     }
     try:
         return {name: [checks[name]({**one}) for one in rows] for name, rows in children.items()}
@@ -79,7 +79,8 @@ def word_checked(what: str, word: str, known: Sequence[str]) -> None:
         )
 
 
-def _within(values: Values, name: str, what: str, bounds_of: str = "") -> Values:
+def within(values: Values, name: str, what: str, bounds_of: str = "") -> Values:
+    """Refuse a number outside what is possible; blank passes."""
     bounds, number = ranges(bounds_of or name), values.get(name)
     if number is not None and not bounds.number("least") <= number <= bounds.number("most"):
         raise PartRefused(
@@ -124,8 +125,8 @@ def _scanner(values: Values, patient: Patient) -> Values:
 
 
 def _measured(values: Values, patient: Patient, day: dt.date) -> Values:
-    _within(values, "cst_um", "CST")
-    _within(values, "iop_tenths", "IOP")
+    within(values, "cst_um", "CST")
+    within(values, "iop_tenths", "IOP")
     _known(values, "oct_class", words.OCT_CLASSES)
     _known(values, "scan_quality", words.QUALITIES)
     _known(values, "irf", words.GRADES)
@@ -139,8 +140,8 @@ def _measured(values: Values, patient: Patient, day: dt.date) -> Values:
 def _treated(values: Values, patient: Patient, day: dt.date) -> Values:
     outcome = values.get("outcome", "")
     word_checked("treatment", outcome, Treated.Outcome.values)
-    _within(values, "dose_ug", "dose")
-    _within(values, "iop_after_tenths", "IOP after", "iop_tenths")
+    within(values, "dose_ug", "dose")
+    within(values, "iop_after_tenths", "IOP after", "iop_tenths")
     named = bool(values.get("agent") or values.get("laser"))
     if (outcome == GIVEN) != named:
         raise PartRefused(
@@ -163,12 +164,12 @@ def _treated(values: Values, patient: Patient, day: dt.date) -> Values:
 
 def _decided(values: Values, patient: Patient, day: dt.date) -> Values:
     word_checked("decision", values.get("choice", ""), Decided.Choice.values)
-    return _within(values, "interval_weeks", "interval", "due_weeks")
+    return within(values, "interval_weeks", "interval", "due_weeks")
 
 
 def _next(values: Values, patient: Patient, day: dt.date) -> Values:
-    _within(values, "due_weeks", "due in weeks")
-    _within(values, "planned_dose_ug", "planned dose", "dose_ug")
+    within(values, "due_weeks", "due in weeks")
+    within(values, "planned_dose_ug", "planned dose", "dose_ug")
     due = values.get("due_day")
     if due is not None and due <= day:
         raise PartRefused(

@@ -78,6 +78,11 @@ def kind_of_change(before: EyeRecord | None, after: EyeRecord, typed: Children) 
     return Revision.Change.ADDITION if only_blanks and kept else Revision.Change.CORRECTION
 
 
+def repeats(last: models.Model, values: Mapping[str, Any]) -> bool:
+    """Say whether a row holds these values already, as after a double click."""
+    return all(getattr(last, name) == value for name, value in values.items())
+
+
 def children_store(row: EyeRecord, typed: Children) -> None:
     """Store the children of a new revision."""
     for name, rows in typed.items():
