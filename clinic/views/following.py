@@ -12,7 +12,7 @@ from django.views.decorators.http import require_POST, require_safe
 
 from clinic.forms.fields import sentence
 from clinic.forms.person import ContactForm
-from clinic.models import Answer, EyeNow, Patient
+from clinic.models import Answer, ContactEntry, EyeNow, Patient
 from clinic.selectors.access import CLINICIAN, WRITERS, Here, eye_for, patient_for, site_for
 from clinic.selectors.following import awaiting, contacts, gone_quiet
 from clinic.services.following import answer_record
@@ -74,12 +74,8 @@ def contact(request: HttpRequest, slug: str, code: str) -> HttpResponse:
 def _store(here: Here, patient: Patient, form: ContactForm) -> None:
     data = form.cleaned_data
     sides = {eye.side for eye in patient.eyes.all()}
-    revs = _revisions(patient, data["day"])
-    eyes = {
-        side: EyePart(form.values(), base_rev=revs.get(side, 0), note=data["note"])
-        for side in data["eyes"]
-        if side in sides
-    }
+    before = _told_before(patient, data["day"])
+    eyes = {side: _part(form, before.get(side)) for side in data["eyes"] if side in sides}
     if not eyes:
         raise EbblineError(
             "eye",
@@ -103,15 +99,32 @@ def _store(here: Here, patient: Patient, form: ContactForm) -> None:
     )
 
 
-def _revisions(patient: Patient, day: dt.date) -> dict[str, int]:
-    rows = patient.visits.filter(day=day, kind="contact").values_list(
-        "contactentry_set__eye__side", "contactentry_set__rev"
-    )
-    found: dict[str, int] = {}
-    for side, rev in rows:
-        if side:
-            found[side] = max(rev, found.get(side, 0))
-    return found
+def _part(form: ContactForm, before: ContactEntry | None) -> EyePart:
+    """Return a call as it is stored: what an earlier call of the day told as present stays so.
+
+    Only a clinician's answer closes an alarm, not a second call that nobody took.
+    """
+    values, rev = form.values(), 0
+    if before is not None:
+        rev = before.rev
+        if before.change != ContactEntry.Change.WITHDRAWN:
+            values["symptoms"] = told_by_both(before.symptoms, values["symptoms"])
+            values["symptoms_onset"] = values["symptoms_onset"] or before.symptoms_onset
+    return EyePart(values, base_rev=rev, note=form.cleaned_data["note"])
+
+
+def told_by_both(first: str, second: str) -> str:
+    """Return the symptoms of two calls of a day as one text: present in either is present."""
+    tokens = [one for text in (first, second) for one in text.split("+") if one]
+    named = dict.fromkeys(one.removesuffix(":gone") for one in tokens if one != "none")
+    if not named:
+        return "none" if "none" in tokens else ""
+    return "+".join(name if name in tokens else f"{name}:gone" for name in named)
+
+
+def _told_before(patient: Patient, day: dt.date) -> dict[str, ContactEntry]:
+    rows = ContactEntry.objects.filter(visit__patient=patient, visit__day=day)
+    return {row.eye.side: row for row in rows.select_related("eye").order_by("rev")}
 
 
 @require_POST
