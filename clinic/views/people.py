@@ -1,5 +1,7 @@
 """A person: enrolment, the person's page, and the dated facts of person and eyes."""
 
+import uuid
+from collections.abc import Callable
 from typing import Any
 
 from django import forms
@@ -31,6 +33,15 @@ from trends.errors import EbblineError
 SIDES = (("R", "Right eye"), ("L", "Left eye"))
 
 
+def stored(form: forms.Form, service: Callable[..., Any], **values: Any) -> Any:
+    """Call a service; a refusal becomes the form's error and nothing is returned."""
+    try:
+        return service(**values)
+    except EbblineError as error:
+        form.add_error(None, sentence(error))
+        return None
+
+
 def enrol(request: HttpRequest, slug: str) -> HttpResponse:
     """Enrol a person under a fresh code, with each followed eye and its history."""
     here = site_for(request.user, slug, *WRITERS)
@@ -41,20 +52,20 @@ def enrol(request: HttpRequest, slug: str) -> HttpResponse:
     valid = data is not None and all([person.is_valid(), *(f.is_valid() for f in eyes.values())])
     if valid:
         chosen = {side: form.eye() for side, form in eyes.items()}
-        try:
-            patient = people.patient_enrol(
-                site=here.site,
-                sex=person.cleaned_data["sex"],
-                birth_year=person.cleaned_data["birth_year"],
-                age_90_or_over=person.cleaned_data["age_90_or_over"],
-                eyes={side: eye for side, eye in chosen.items() if eye is not None},
-                by=here.user,
-                at=timezone.now(),
-                today=today,
-            )
-        except EbblineError as error:
-            person.add_error(None, sentence(error))
-        else:
+        patient = stored(
+            person,
+            people.patient_enrol,
+            site=here.site,
+            sex=person.cleaned_data["sex"],
+            birth_year=person.cleaned_data["birth_year"],
+            age_90_or_over=person.cleaned_data["age_90_or_over"],
+            eyes={side: eye for side, eye in chosen.items() if eye is not None},
+            by=here.user,
+            at=timezone.now(),
+            today=today,
+            request_id=_request_id(request),
+        )
+        if patient is not None:
             messages.success(
                 request,
                 f"Enrolled as {patient.code}. Write the code on the card now: "
@@ -62,9 +73,17 @@ def enrol(request: HttpRequest, slug: str) -> HttpResponse:
             )
             return redirect("person", slug=slug, code=patient.code)
     pairs = [(words, eyes[side]) for side, words in SIDES]
-    context = {"here": here, "form": person, "eyes": pairs}
+    context = {"here": here, "form": person, "eyes": pairs, "request_id": _request_id(request)}
     status = 422 if data is not None else 200
     return render(request, "people/enrol.html", context, status=status)
+
+
+def _request_id(request: HttpRequest) -> uuid.UUID:
+    """Return the hidden id of the posted sheet, or a new one."""
+    try:
+        return uuid.UUID(request.POST.get("request_id", ""))
+    except ValueError:
+        return uuid.uuid4()
 
 
 @require_safe
@@ -90,17 +109,17 @@ def person_status(request: HttpRequest, slug: str, code: str) -> HttpResponse:
     form = PersonStatusForm(request.POST or None, initial={"from_day": timezone.localdate()})
     if request.method == "POST" and form.is_valid():
         data = form.cleaned_data
-        people.patient_status_record(
-            patient=patient,
-            status=data["status"],
-            from_day=data["from_day"],
-            reason=data["reason"],
-            by=here.user,
-            at=timezone.now(),
-        )
-        messages.success(request, f"Recorded: {PatientStatus.Status(data['status']).label}.")
-        return redirect("person", slug=slug, code=patient.code)
+        names = ("status", "from_day", "reason")
+        values = {name: data[name] for name in names}
+        who = {"patient": patient, "by": here.user, "at": timezone.now()}
+        if stored(form, people.patient_status_record, **values, **who):
+            messages.success(request, f"Recorded: {PatientStatus.Status(data['status']).label}.")
+            return redirect("person", slug=slug, code=patient.code)
     return _page(request, here, patient, None, "Standing of the person", form)
+
+
+def _who(here: Here) -> dict[str, Any]:
+    return {"by": here.user, "at": timezone.now(), "today": timezone.localdate()}
 
 
 def _page(
@@ -120,18 +139,8 @@ def history(request: HttpRequest, slug: str, code: str, side: str) -> HttpRespon
         if values is None:
             form.add_error("mode", "Choose what is known.")
             return _page(request, here, eye.patient, eye, "History before the log", form)
-        try:
-            people.history_record(
-                eye=eye,
-                values=values,
-                reason=form.cleaned_data["reason"],
-                by=here.user,
-                at=timezone.now(),
-                today=timezone.localdate(),
-            )
-        except EbblineError as error:
-            form.add_error("reason", sentence(error))
-        else:
+        why = form.cleaned_data["reason"]
+        if stored(form, people.history_record, eye=eye, values=values, reason=why, **_who(here)):
             messages.success(request, "History stored; readings were worked out anew.")
             return redirect("person", slug=slug, code=eye.patient.code)
     return _page(request, here, eye.patient, eye, "History before the log", form)
@@ -146,15 +155,10 @@ def status(request: HttpRequest, slug: str, code: str, side: str) -> HttpRespons
     form = StateForm(request.POST or None, initial={**initial, "from_day": timezone.localdate()})
     if request.method == "POST" and form.is_valid():
         names = ("cause", "status", "stop_reason", "from_day", "reason")
-        people.eye_state_record(
-            eye=eye,
-            values={name: form.cleaned_data[name] for name in names},
-            by=here.user,
-            at=timezone.now(),
-            today=timezone.localdate(),
-        )
-        messages.success(request, "Status stored.")
-        return redirect("person", slug=slug, code=eye.patient.code)
+        values = {name: form.cleaned_data[name] for name in names}
+        if stored(form, people.eye_state_record, eye=eye, values=values, **_who(here)):
+            messages.success(request, "Status stored.")
+            return redirect("person", slug=slug, code=eye.patient.code)
     return _page(request, here, eye.patient, eye, "Status and cause", form)
 
 
@@ -164,17 +168,10 @@ def event(request: HttpRequest, slug: str, code: str, side: str) -> HttpResponse
     eye = eye_for(here, code, side)
     form = EventForm(request.POST or None)
     if request.method == "POST" and form.is_valid():
-        people.eye_event_record(
-            eye=eye,
-            kind=form.cleaned_data["kind"],
-            day=form.cleaned_data["day"],
-            reason=form.cleaned_data["reason"],
-            by=here.user,
-            at=timezone.now(),
-            today=timezone.localdate(),
-        )
-        messages.success(request, "Event stored; comparisons across it end there.")
-        return redirect("person", slug=slug, code=eye.patient.code)
+        values = {name: form.cleaned_data[name] for name in ("kind", "day", "reason")}
+        if stored(form, people.eye_event_record, eye=eye, **values, **_who(here)):
+            messages.success(request, "Event stored; comparisons across it end there.")
+            return redirect("person", slug=slug, code=eye.patient.code)
     return _page(request, here, eye.patient, eye, "Eye event", form)
 
 
@@ -184,15 +181,9 @@ def course(request: HttpRequest, slug: str, code: str, side: str) -> HttpRespons
     eye = eye_for(here, code, side)
     form = CourseForm(request.POST or None, initial={"from_day": timezone.localdate()})
     if request.method == "POST" and form.is_valid():
-        people.course_open(
-            eye=eye,
-            values=form.values(),
-            by=here.user,
-            at=timezone.now(),
-            today=timezone.localdate(),
-        )
-        messages.success(request, "Course opened.")
-        return redirect("person", slug=slug, code=eye.patient.code)
+        if stored(form, people.course_open, eye=eye, values=form.values(), **_who(here)):
+            messages.success(request, "Course opened.")
+            return redirect("person", slug=slug, code=eye.patient.code)
     return _page(request, here, eye.patient, eye, "Treatment course", form)
 
 
@@ -204,15 +195,10 @@ def plan(request: HttpRequest, slug: str, code: str, side: str) -> HttpResponse:
     initial = {"due_day": last.due_day, "planned_agent": last.planned_agent} if last else {}
     form = PlanForm(request.POST or None, initial=initial)
     if request.method == "POST" and form.is_valid():
-        plan_record(
-            eye=eye,
-            values=form.values(),
-            reason=form.cleaned_data["reason"],
-            by=here.user,
-            at=timezone.now(),
-        )
-        messages.success(request, "Plan stored. Lateness still counts from the first due day.")
-        return redirect("person", slug=slug, code=eye.patient.code)
+        who = {"by": here.user, "at": timezone.now(), "reason": form.cleaned_data["reason"]}
+        if stored(form, plan_record, eye=eye, values=form.values(), **who):
+            messages.success(request, "Plan stored. Lateness still counts from the first due day.")
+            return redirect("person", slug=slug, code=eye.patient.code)
     return _page(request, here, eye.patient, eye, "Plan and booking", form)
 
 
