@@ -1,9 +1,28 @@
 """Stored records as a form's first values, so that a correction starts from what stands."""
 
+from collections.abc import Mapping
 from typing import Any
 
 from clinic.models import Decided, EyeRecord, Measured, NextStep, Plan, Treated
 from trends.measures.pressure import shown
+
+# What a station keeps belongs to a value: it is offered only where that value isn't stored yet.
+STATION_OF = {
+    "scanner": "cst",
+    "iop_method": "iop",
+    "acuity_notation": "acuity",
+    "acuity_chart": "acuity",
+}
+
+
+def with_station(initial: dict[str, Any], station: Mapping[str, Any]) -> dict[str, Any]:
+    """Return first values with the station's facts where nothing is stored that they belong to."""
+    offered = {
+        name: fact
+        for name, fact in station.items()
+        if not initial.get(STATION_OF[name]) and not initial.get(name)
+    }
+    return {**initial, **offered}
 
 
 def initial_of(part: str, record: EyeRecord) -> dict[str, Any]:

@@ -14,7 +14,7 @@ from clinic.forms.fields import (
     dose_ug,
     whole_number,
 )
-from clinic.forms.sheet import AGENTS, LENSES, SYMPTOMS
+from clinic.forms.sheet.words import AGENTS, LENSES, SYMPTOMS
 from clinic.models import EyeEvent, EyeState, Patient, PatientStatus, Plan
 from clinic.services.patients import EyeIn
 from trends.measures import pressure, thickness

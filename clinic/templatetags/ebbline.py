@@ -3,6 +3,7 @@
 import datetime as dt
 
 from django import template
+from django.forms import BoundField
 from django.urls import reverse
 
 from clinic.selectors.access import Here
@@ -63,3 +64,15 @@ def mg(ug: int | None) -> str:
 def signed(number: float | None) -> str:
     """Return a change with its sign, a true minus."""
     return "" if number is None else f"{number:+g}".replace("-", "\u2212")
+
+
+@register.filter
+def questions(field: BoundField) -> list[str]:
+    """Return the questions about an unlikely value of a field that aren't settled."""
+    return list(getattr(field.form, "asked", {}).get(field.name, []))
+
+
+@register.filter
+def kept(field: BoundField) -> list[str]:
+    """Return the questions that were answered with "it is meant"."""
+    return list(getattr(field.form, "kept", {}).get(field.name, []))

@@ -1,14 +1,17 @@
-/* Every page: warns before the idle time ends, signs in again in place, keeps the typed page. */
+/* Every page: warns before the idle time ends, and signs in again in place so that what was typed
+   stays on the page. Other scripts post through `ebbline.send`. */
 "use strict";
 (function () {
-  const body = document.body;
   const again = document.getElementById("sign-in-again");
   if (!again) return;
-  const idle = Number(body.dataset.idle) * 1000;
-  const warn = Number(body.dataset.warn) * 1000;
+  const form = document.getElementById("sign-in-again-form");
+  const problem = document.getElementById("again-error");
   const warning = document.getElementById("idle-warning");
+  const idle = Number(document.body.dataset.idle) * 1000;
+  const warn = Number(document.body.dataset.warn) * 1000;
+  const headers = { "X-Requested-With": "ebbline" };
+  let waiting = [];
   let last = Date.now();
-  let resume = null;
 
   function token() {
     const field = document.querySelector("input[name=csrfmiddlewaretoken]");
@@ -17,46 +20,52 @@
   function renew(fresh) {
     document.querySelectorAll("input[name=csrfmiddlewaretoken]").forEach(function (field) { field.value = fresh; });
   }
+  function post(url, data) {
+    data.set("csrfmiddlewaretoken", token());
+    return fetch(url, { method: "POST", body: data, headers: headers, credentials: "same-origin" });
+  }
 
-  // Returns a promise of a response; a 401 asks for the password in place, then sends it again.
-  function send(url, data) {
+  // Returns the response. When the session has ended it asks for the password here, then sends again.
+  async function send(url, data) {
     last = Date.now();
-    const form = data instanceof FormData ? data : new URLSearchParams(data);
-    return fetch(url, {
-      method: "POST",
-      body: form,
-      headers: { "X-Requested-With": "ebbline", "X-CSRFToken": token() },
-      credentials: "same-origin"
-    }).then(function (answer) {
-      if (answer.status !== 401 && answer.status !== 403) return answer;
-      return answer.clone().json().then(function (said) {
-        if (!said.signed_out && !said.old_page) return answer;
-        return ask().then(function () { return send(url, data); });
-      }, function () { return answer; });
-    });
+    const answer = await post(url, data);
+    if (answer.status !== 401 && answer.status !== 403) return answer;
+    const said = await answer.clone().json().catch(function () { return {}; });
+    if (!said.signed_out && !said.old_page) return answer;
+    await signedInAgain();
+    return send(url, data);
   }
-  function ask() {
+  function signedInAgain() {
     if (!again.open) again.showModal();
-    return new Promise(function (done) { resume = done; });
+    return new Promise(function (done, fail) { waiting.push({ done: done, fail: fail }); });
   }
-  document.getElementById("sign-in-again-form").addEventListener("submit", function (event) {
+  function settle(how) {
+    const those = waiting;
+    waiting = [];
+    those.forEach(function (one) { one[how](new Error("signed out")); });
+  }
+  async function signIn() {
+    const page = await fetch("/sign-in/", { credentials: "same-origin" });
+    const fresh = new DOMParser().parseFromString(await page.text(), "text/html").querySelector("input[name=csrfmiddlewaretoken]");
+    if (fresh) renew(fresh.value);
+    const said = await (await post(form.action, new FormData(form))).json();
+    if (!said.signed_in) return false;
+    if (said.token) renew(said.token);
+    document.querySelectorAll(".who").forEach(function (who) { who.textContent = said.name; });
+    return true;
+  }
+  form.addEventListener("submit", async function (event) {
     event.preventDefault();
-    const form = event.target;
-    fetch("/sign-in/", { credentials: "same-origin" }).then(function (page) { return page.text(); }).then(function (text) {
-      const found = /name="csrfmiddlewaretoken" value="([^"]+)"/.exec(text);
-      if (found) renew(found[1]);
-      const data = new FormData(form);
-      return fetch(form.action, { method: "POST", body: data, credentials: "same-origin", headers: { "X-Requested-With": "ebbline", "X-CSRFToken": token() } });
-    }).then(function (answer) { return answer.json(); }).then(function (said) {
-      document.getElementById("again-error").hidden = said.signed_in;
-      if (!said.signed_in) return;
-      if (said.token) renew(said.token);
-      form.elements.password.value = "";
-      again.close();
-      last = Date.now();
-      if (resume) { const done = resume; resume = null; done(); }
-    });
+    const fits = await signIn().catch(function () { return false; });
+    form.elements.password.value = "";
+    problem.hidden = fits;
+    if (!fits) return;
+    last = Date.now();
+    again.close();
+    settle("done");
   });
+  again.addEventListener("close", function () { settle("fail"); });
+
   ["keydown", "pointerdown"].forEach(function (name) {
     document.addEventListener(name, function () { last = Date.now(); }, { passive: true });
   });
