@@ -148,6 +148,34 @@ class EyeState(AppendOnly):
     class Meta:
         constraints = [
             models.UniqueConstraint(fields=["eye", "seq"], name="eye_state_seq_once"),
+            models.CheckConstraint(
+                condition=models.Q(
+                    cause__in=[
+                        "diabetic",
+                        "branch_vein",
+                        "central_vein",
+                        "uveitic",
+                        "after_surgery",
+                        "other",
+                        "",
+                    ]
+                ),
+                name="eye_state_cause_known",
+            ),
+            models.CheckConstraint(
+                condition=models.Q(
+                    status__in=[
+                        "in_treatment",
+                        "watched",
+                        "paused",
+                        "stopped",
+                        "care_elsewhere",
+                        "not_followed",
+                        "",
+                    ]
+                ),
+                name="eye_state_status_known",
+            ),
         ]
 
     def __str__(self) -> str:
@@ -214,6 +242,21 @@ class EyeEvent(AppendOnly):
 
     class Meta:
         indexes = [models.Index(fields=["eye", "day"])]
+        constraints = [
+            models.CheckConstraint(
+                condition=models.Q(
+                    kind__in=[
+                        "lens_surgery",
+                        "capsulotomy",
+                        "vitrectomy",
+                        "oil",
+                        "laser",
+                        "occlusion",
+                    ]
+                ),
+                name="eye_event_kind_known",
+            ),
+        ]
 
     def __str__(self) -> str:
         return f"{self.eye} {self.get_kind_display()} {self.day.isoformat()}"

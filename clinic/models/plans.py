@@ -40,6 +40,19 @@ class Plan(AppendOnly):
     class Meta:
         constraints = [
             models.UniqueConstraint(fields=["eye", "seq"], name="plan_seq_once"),
+            models.CheckConstraint(
+                condition=models.Q(
+                    attendance__in=[
+                        "",
+                        "came",
+                        "did_not_come",
+                        "cancelled_by_patient",
+                        "cancelled_by_clinic",
+                        "moved",
+                    ]
+                ),
+                name="plan_attendance_known",
+            ),
         ]
         indexes = [models.Index(fields=["booked_day"]), models.Index(fields=["due_day"])]
 

@@ -67,6 +67,10 @@ class Answer(AppendOnly):
                 condition=~models.Q(answer="look_again") | models.Q(look_again_on__isnull=False),
                 name="answer_look_again_has_a_date",
             ),
+            models.CheckConstraint(
+                condition=models.Q(answer__in=["acting", "not_acting", "look_again"]),
+                name="answer_kind_known",
+            ),
         ]
 
     def __str__(self) -> str:

@@ -210,6 +210,15 @@ class Decided(EyeRecord):
     agent = models.CharField(max_length=40, blank=True)
     departs_because = models.CharField(max_length=280, blank=True)
 
+    class Meta(EyeRecord.Meta):
+        constraints = [
+            *EyeRecord.Meta.constraints,
+            models.CheckConstraint(
+                condition=models.Q(choice__in=["treat", "withhold", "interval", "switch", "stop"]),
+                name="decided_choice_known",
+            ),
+        ]
+
     def __str__(self) -> str:
         return f"{self.visit} {self.eye.side} {self.choice}"
 
@@ -240,6 +249,20 @@ class Treated(EyeRecord):
     iop_after_tenths = models.PositiveSmallIntegerField(null=True, blank=True)
     iop_after_method = models.CharField(max_length=12, blank=True)
     complications = models.CharField(max_length=160, blank=True)
+
+    class Meta(EyeRecord.Meta):
+        constraints = [
+            *EyeRecord.Meta.constraints,
+            models.CheckConstraint(
+                condition=models.Q(outcome__in=["given", "nothing", "not_given"]),
+                name="treated_outcome_known",
+            ),
+            models.CheckConstraint(
+                condition=models.Q(iop_after_tenths__isnull=True)
+                | models.Q(iop_after_tenths__lte=800),
+                name="treated_iop_possible",
+            ),
+        ]
 
     def __str__(self) -> str:
         return f"{self.visit} {self.eye.side} {self.agent or self.outcome}"
@@ -293,6 +316,15 @@ class ContactEntry(EyeRecord):
     outcome = models.CharField(max_length=24, blank=True)
     told_whom = models.CharField(max_length=60, blank=True)
     told_at = models.DateTimeField(null=True, blank=True)
+
+    class Meta(EyeRecord.Meta):
+        constraints = [
+            *EyeRecord.Meta.constraints,
+            models.CheckConstraint(
+                condition=models.Q(direction__in=["from_patient", "to_patient"]),
+                name="contact_direction_known",
+            ),
+        ]
 
     def __str__(self) -> str:
         return f"{self.visit} {self.eye.side} contact"
