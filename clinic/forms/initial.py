@@ -1,9 +1,10 @@
 """Stored records as a form's first values, so that a correction starts from what stands."""
 
+import datetime as dt
 from collections.abc import Mapping
 from typing import Any
 
-from clinic.models import Decided, EyeRecord, Measured, NextStep, Plan, Treated
+from clinic.models import Decided, EyeRecord, History, Measured, NextStep, Plan, Treated
 from trends.measures.pressure import shown
 
 # What a station keeps belongs to a value: it is offered only where that value isn't stored yet.
@@ -115,4 +116,37 @@ def ahead(record: NextStep) -> dict[str, Any]:
         "check_only": record.check_only,
         "booked_day": plan.booked_day if plan else None,
         "booked_time": f"{plan.booked_time:%H:%M}" if plan and plan.booked_time else "",
+    }
+
+
+def plan(row: Plan | None, today: dt.date) -> dict[str, Any]:
+    """Return a stored plan's first values; a booking comes along only while it lies ahead."""
+    if row is None:
+        return {}
+    booked = row.booked_day is not None and row.booked_day >= today
+    return {
+        "due_day": row.due_day,
+        "planned_agent": row.planned_agent,
+        "planned_dose": _mg(row.planned_dose_ug),
+        "check_only": row.check_only,
+        "booked_day": row.booked_day if booked else None,
+        "booked_time": f"{row.booked_time:%H:%M}" if booked and row.booked_time else "",
+    }
+
+
+def history(row: History | None) -> dict[str, Any]:
+    """Return a stored history's first values; nothing without one."""
+    if row is None:
+        return {}
+    if row.new_eye:
+        return {"mode": "new_eye"}
+    same = ("diagnosed_on", "treatments_so_far", "agent", "last_treatment_on", "interval_weeks")
+    truths = ("loading_done", "steroid_ever", "pressure_rise_after_steroid", "vitrectomy", "laser")
+    iop = row.baseline_iop_tenths
+    return {
+        "mode": "entered",
+        **{name: getattr(row, name) for name in (*same, "baseline_letters", "lens")},
+        **{name: {True: "yes", False: "no", None: ""}[getattr(row, name)] for name in truths},
+        "baseline_cst": row.baseline_cst_um,
+        "baseline_iop": "" if iop is None else shown(iop),
     }

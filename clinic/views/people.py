@@ -12,6 +12,7 @@ from django.urls import path
 from django.utils import timezone
 from django.views.decorators.http import require_safe
 
+from clinic.forms import initial
 from clinic.forms.fields import sentence
 from clinic.forms.person import (
     CourseForm,
@@ -133,7 +134,8 @@ def history(request: HttpRequest, slug: str, code: str, side: str) -> HttpRespon
     """Enter or correct what is known of an eye before the log."""
     here = site_for(request.user, slug, *WRITERS)
     eye = eye_for(here, code, side)
-    form = HistoryPageForm(request.POST or None)
+    last = eye.histories.order_by("-rev").first()
+    form = HistoryPageForm(request.POST or None, initial=initial.history(last))
     if request.method == "POST" and form.is_valid():
         values = form.values()
         if values is None:
@@ -151,8 +153,8 @@ def status(request: HttpRequest, slug: str, code: str, side: str) -> HttpRespons
     here = site_for(request.user, slug, CLINICIAN)
     eye = eye_for(here, code, side)
     last = eye.states.order_by("-seq").first()
-    initial = {"cause": last.cause, "status": last.status} if last else {}
-    form = StateForm(request.POST or None, initial={**initial, "from_day": timezone.localdate()})
+    first = {"cause": last.cause, "status": last.status} if last else {}
+    form = StateForm(request.POST or None, initial={**first, "from_day": timezone.localdate()})
     if request.method == "POST" and form.is_valid():
         names = ("cause", "status", "stop_reason", "from_day", "reason")
         values = {name: form.cleaned_data[name] for name in names}
@@ -192,8 +194,7 @@ def plan(request: HttpRequest, slug: str, code: str, side: str) -> HttpResponse:
     here = site_for(request.user, slug, *WRITERS)
     eye = eye_for(here, code, side)
     last = eye.plans.order_by("-seq").first()
-    initial = {"due_day": last.due_day, "planned_agent": last.planned_agent} if last else {}
-    form = PlanForm(request.POST or None, initial=initial)
+    form = PlanForm(request.POST or None, initial=initial.plan(last, timezone.localdate()))
     if request.method == "POST" and form.is_valid():
         who = {"by": here.user, "at": timezone.now(), "reason": form.cleaned_data["reason"]}
         if stored(form, plan_record, eye=eye, values=form.values(), **who):
