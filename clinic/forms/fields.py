@@ -7,6 +7,7 @@ from typing import Any
 
 from django import forms
 
+from clinic.identifiers import Match, found
 from trends.errors import EbblineError
 from trends.measures.ranges import ranges
 
@@ -39,6 +40,35 @@ class ParsedField(forms.CharField):
             return self.parse(text)
         except EbblineError as error:
             raise forms.ValidationError(sentence(error)) from error
+
+
+def told(match: Match) -> str:
+    """Return what was found in a free text, the match shown with the reason."""
+    return f"{match.text!r} looks like {match.words}."
+
+
+class FreeTextField(forms.CharField):
+    """A short free text that must hold no identifier of a person.
+
+    What surely is one is refused with the match; ``doubts`` returns what only may be one. A bare
+    name can't be caught: say so beside the field.
+    """
+
+    def clean(self, value: Any) -> Any:
+        """Return the text, or refuse it with what was found."""
+        text = super().clean(value)
+        for match in found(text or ""):
+            if match.blocks:
+                raise forms.ValidationError(
+                    f"{told(match)} Nothing that identifies a person is kept here, because the "
+                    "log is shared in the clinic. Take it out and save again."
+                )
+        return text
+
+    @staticmethod
+    def doubts(text: str) -> list[str]:
+        """Return questions about what may be an identifier."""
+        return [f"{told(match)} Keep it only if it is none." for match in found(text)]
 
 
 class IsoDateField(forms.DateField):

@@ -7,6 +7,7 @@ from django import forms
 
 from clinic.forms.fields import (
     ClockField,
+    FreeTextField,
     IsoDateField,
     ParsedField,
     birth_year,
@@ -148,7 +149,7 @@ class EyeEnrolForm(HistoryForm):
 class ReasonForm(forms.Form):
     """A reason in a few words."""
 
-    reason = forms.CharField(required=False, max_length=280, label="Reason")
+    reason = FreeTextField(required=False, max_length=280, label="Reason")
 
     def __init__(self, *args: Any, **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)
@@ -158,7 +159,7 @@ class ReasonForm(forms.Form):
 class HistoryPageForm(HistoryForm):
     """The history of an eye, entered later or corrected."""
 
-    reason = forms.CharField(required=False, max_length=280, label="Reason, if it is corrected")
+    reason = FreeTextField(required=False, max_length=280, label="Reason, if it is corrected")
 
 
 class StateForm(ReasonForm):
@@ -192,7 +193,7 @@ class CourseForm(forms.Form):
     )
     agent = forms.ChoiceField(choices=choices(*AGENTS, blank="none named"), required=False)
     from_day = IsoDateField(label="From", required=True)
-    reason = forms.CharField(
+    reason = FreeTextField(
         max_length=280,
         error_messages={"required": "A course is opened with a reason; a few words are enough."},
     )
@@ -261,8 +262,8 @@ class ContactForm(forms.Form):
     symptoms_none = forms.BooleanField(required=False, label="asked, none")
     symptoms_onset = IsoDateField(label="Since")
     outcome = forms.ChoiceField(choices=OUTCOMES, required=False)
-    told_whom = forms.CharField(required=False, max_length=60, label="Told whom (role, no name)")
-    note = forms.CharField(required=False, max_length=280, label="Note (no names)")
+    told_whom = FreeTextField(required=False, max_length=60, label="Told whom (role, no name)")
+    note = FreeTextField(required=False, max_length=280, label="Note (no names)")
 
     def symptoms(self) -> str:
         """Return the symptoms as one text."""

@@ -52,6 +52,8 @@ def save(
     post = PostForm(request.POST)
     again = {"refused": part, "reason": request.POST.get("reason", "")}
     valid = all([form.is_valid() for form in forms.values()]) and post.is_valid()
+    if post.errors.get("reason"):
+        again["reason_error"] = " ".join(str(error) for error in post.errors["reason"])
     if not valid or any(form.asked for form in forms.values()):
         return _again(request, here, patient, day, kind, {part: forms}, again)
     try:

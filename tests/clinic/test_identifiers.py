@@ -1,8 +1,13 @@
 """The guard on free text: identifiers are caught, clinical strings pass."""
 
-import pytest
+import datetime as dt
 
+import pytest
+from django.http import QueryDict
+
+from clinic.forms.sheet import DecidedForm
 from clinic.identifiers import found
+from clinic.models import Site
 
 BLOCKED = [
     "write to ida.holm@example.org",
@@ -62,3 +67,23 @@ def test_what_may_be_one_is_asked_about(text: str) -> None:
 @pytest.mark.parametrize("text", CLINICAL)
 def test_clinical_strings_pass(text: str) -> None:
     assert found(text) == []
+
+
+def form_of(**typed: str) -> DecidedForm:
+    data = QueryDict(mutable=True)
+    data.update({f"R-{name}": value for name, value in typed.items()})
+    return DecidedForm(data, prefix="R", site=Site(slug="a"), day=dt.date(2026, 3, 4))
+
+
+def test_a_note_with_an_identifier_is_refused_and_shown() -> None:
+    form = form_of(choice="treat", note="told Dr Holm")
+    assert not form.is_valid()
+    assert "'Dr Holm' looks like a title with a name" in form.errors["note"][0]
+
+
+def test_what_may_be_one_is_asked_once_and_can_be_kept() -> None:
+    form = form_of(choice="treat", departs_because="wife Ida drives")
+    assert form.is_valid() and "wife Ida" in form.asked["departs_because"][0]
+    question = form.asked["departs_because"][0]
+    kept = form_of(choice="treat", departs_because="wife Ida drives", keep=question)
+    assert kept.is_valid() and not kept.asked

@@ -2,6 +2,7 @@
 
 from django import forms
 
+from clinic.forms.fields import FreeTextField
 from clinic.forms.sheet.ahead import NextForm
 from clinic.forms.sheet.decided import DecidedForm
 from clinic.forms.sheet.eye import EyeForm
@@ -29,4 +30,4 @@ class PostForm(forms.Form):
     """What every posted part carries besides its eyes."""
 
     request_id = forms.UUIDField(widget=forms.HiddenInput)
-    reason = forms.CharField(required=False, max_length=280)
+    reason = FreeTextField(required=False, max_length=280)

@@ -4,7 +4,7 @@ from typing import Any
 
 from django import forms
 
-from clinic.forms.fields import ParsedField, choices, whole_number
+from clinic.forms.fields import FreeTextField, ParsedField, choices, whole_number
 from clinic.forms.sheet.eye import TEXT, EyeForm
 from clinic.forms.sheet.words import AGENTS
 from clinic.models import Decided
@@ -18,7 +18,7 @@ class DecidedForm(EyeForm):
     )
     interval_weeks = ParsedField(whole_number("due_weeks"), label="Interval (weeks)")
     agent = forms.ChoiceField(choices=choices(*AGENTS, blank="none named"), required=False)
-    departs_because = forms.CharField(
+    departs_because = FreeTextField(
         required=False,
         max_length=280,
         label="Reason, if it departs",

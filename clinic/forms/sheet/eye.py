@@ -9,6 +9,7 @@ from typing import Any
 
 from django import forms
 
+from clinic.forms.fields import FreeTextField
 from clinic.models import Site
 from clinic.services.parts import EyePart
 
@@ -20,7 +21,7 @@ class EyeForm(forms.Form):
     """One eye of a part; its prefix is the side."""
 
     base_rev = forms.IntegerField(widget=forms.HiddenInput, required=False, min_value=0)
-    note = forms.CharField(
+    note = FreeTextField(
         required=False, max_length=280, widget=TEXT(attrs={"class": "wide"}), help_text=NOTE_HINT
     )
 
@@ -42,6 +43,15 @@ class EyeForm(forms.Form):
         """Question an unlikely value once, beside its field."""
         found = self.kept if question in self._answered else self.asked
         found.setdefault(name, []).append(question)
+
+    def clean(self) -> dict[str, Any]:
+        """Ask about free texts that may hold an identifier."""
+        data = super().clean() or self.cleaned_data
+        for name, field in self.fields.items():
+            if isinstance(field, FreeTextField):
+                for question in field.doubts(data.get(name) or ""):
+                    self.ask(name, question)
+        return data
 
     @property
     def is_blank(self) -> bool:

@@ -4,7 +4,7 @@ from typing import Any
 
 from django import forms
 
-from clinic.forms.fields import ParsedField, choices, dose_ug
+from clinic.forms.fields import FreeTextField, ParsedField, choices, dose_ug
 from clinic.forms.sheet.eye import TEXT, EyeForm
 from clinic.forms.sheet.words import AGENTS, METHODS
 from clinic.models import Treated
@@ -31,7 +31,7 @@ class TreatedForm(EyeForm):
     laser = forms.ChoiceField(
         choices=choices("focal", "grid", "panretinal", blank="no laser"), required=False
     )
-    not_given_because = forms.CharField(
+    not_given_because = FreeTextField(
         required=False, max_length=280, label="Why not given", widget=TEXT(attrs={"class": "wide"})
     )
     perception_after = forms.ChoiceField(
@@ -41,7 +41,7 @@ class TreatedForm(EyeForm):
     )
     iop_after = ParsedField(pressure.tenths, label="IOP after (mmHg)")
     iop_after_method = forms.ChoiceField(choices=METHODS, required=False)
-    complications = forms.CharField(
+    complications = FreeTextField(
         required=False, max_length=160, label="Complications", widget=TEXT(attrs={"class": "wide"})
     )
     station = ("iop_after_method",)
