@@ -72,6 +72,13 @@ class SignIn(FormPage):
         return super().form_invalid(form)
 
 
+def held(request: HttpRequest, *_: Any) -> HttpResponse:
+    """Say that too many tries hold the name for a while; a script of a page gets it as JSON."""
+    if is_background(request):
+        return JsonResponse({"signed_in": False, "held": True}, status=429)
+    return render(request, "accounts/locked.html", status=429)
+
+
 @require_POST
 def sign_out(request: HttpRequest) -> HttpResponse:
     """Sign out; ``next`` lets the next person at this station come to the same page."""

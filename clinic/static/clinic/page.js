@@ -49,6 +49,7 @@
     const fresh = new DOMParser().parseFromString(await page.text(), "text/html").querySelector("input[name=csrfmiddlewaretoken]");
     if (fresh) renew(fresh.value);
     const said = await (await post(form.action, new FormData(form))).json();
+    problem.textContent = said.held ? problem.dataset.held : problem.dataset.wrong;
     if (!said.signed_in) return false;
     if (said.token) renew(said.token);
     document.querySelectorAll(".who").forEach(function (who) { who.textContent = said.name; });
