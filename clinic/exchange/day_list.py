@@ -6,7 +6,8 @@ from typing import Any, TextIO
 from clinic.exchange.safe_csv import write_safe_csv
 from clinic.models import EyeNow, Site
 from clinic.notice import NOTICE
-from clinic.selectors.clinic_list import Block, ClinicList, EyeLine, Item
+from clinic.selectors.clinic_list import Block, ClinicList, EyeLine
+from clinic.selectors.list_items import Item
 
 Cells = dict[str, Any]
 CSV_HEADER = (

@@ -9,8 +9,9 @@ from clinic.content import EveningBlock, EveningEye, EveningList
 from clinic.models import EyeNow
 from clinic.notice import NOTICE
 from clinic.selectors.access import Here
-from clinic.selectors.clinic_list import Block, ClinicList, EyeLine, Item, clinic_list
+from clinic.selectors.clinic_list import Block, ClinicList, EyeLine, clinic_list
 from clinic.selectors.eye_words import person_text
+from clinic.selectors.list_items import Item
 from clinic.selectors.report_content import ledger_seal
 from clinic.selectors.visit_words import STAYS, iop_text, worded
 

@@ -7,7 +7,7 @@ from typing import Any
 
 from clinic.models import ContactEntry, EyeNow, PatientStatus
 from clinic.selectors.access import Here
-from clinic.selectors.clinic_list import RANK_WORDS, RANKS, SIDE_SLUGS, SIDE_WORDS
+from clinic.selectors.list_items import RANK_WORDS, RANKS, SIDE_SLUGS, SIDE_WORDS
 from clinic.selectors.standing import standing_items
 from clinic.selectors.visit_words import listed
 

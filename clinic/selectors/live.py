@@ -7,8 +7,8 @@ from typing import Any
 from clinic import adapters
 from clinic.chart.spoken import day_words
 from clinic.models import Patient
-from clinic.selectors.clinic_list import RANK_WORDS, RANKS
 from clinic.selectors.judged import Found, judge
+from clinic.selectors.list_items import RANK_WORDS, RANKS
 from trends.measures.acuity import LETTER_E4
 from trends.review import comparisons
 from trends.visits import MISSING

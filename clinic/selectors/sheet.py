@@ -8,8 +8,8 @@ from typing import Any
 from clinic.models import EyeNow, EyeRecord, Measured, Patient, Scanner, Visit
 from clinic.records import PARTS, newest
 from clinic.selectors.access import Here
-from clinic.selectors.clinic_list import RANK_WORDS, RANKS
 from clinic.selectors.last_values import last_values
+from clinic.selectors.list_items import RANK_WORDS, RANKS
 
 SIDES = (("R", "Right eye"), ("L", "Left eye"))
 SHEET_PARTS = ("measured", "decided", "treated", "next")
