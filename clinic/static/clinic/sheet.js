@@ -20,10 +20,11 @@
       if (other !== name && form.dataset.typed !== "yes" && fresh) form.closest("section").replaceWith(document.importNode(fresh, true));
     });
   }
-  function show(text, name, stored) {
+  async function show(text, name, stored) {
     const page = new DOMParser().parseFromString(text, "text/html");
     const fresh = page.getElementById("part-" + name);
     if (!fresh) {
+      if (sheet.keepAll) await sheet.keepAll();
       document.getElementById("main").replaceChildren(...document.importNode(page.getElementById("main"), true).childNodes);
       document.title = page.title;
       window.scrollTo(0, 0);
@@ -59,7 +60,7 @@
       if (drop) data.set("drop", "yes");
       const answer = await window.ebbline.send(drop ? submitter.formAction : form.action, data);
       if (answer.status >= 500) throw new Error("server");
-      show(await answer.text(), name, answer.ok);
+      await show(await answer.text(), name, answer.ok);
     } catch (error) {
       sheet.state(form, error.message === "signed out" ? "Not saved: you are signed out. What you typed is still here; save again to sign in." : "Not saved: the server didn't answer. What you typed is still here; try again.");
     } finally {

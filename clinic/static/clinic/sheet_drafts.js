@@ -44,6 +44,12 @@
     timers.delete(form);
     await underway.get(form);
   };
+  // Before another page takes this one's place: keep what was typed a moment ago.
+  sheet.keepAll = async function () {
+    const typed = Array.from(timers.keys());
+    typed.forEach(function (form) { clearTimeout(timers.get(form)); });
+    await Promise.all(typed.filter(function (form) { return form.isConnected; }).map(keep));
+  };
   window.addEventListener("pagehide", function () {
     timers.forEach(function (timer, form) {
       clearTimeout(timer);

@@ -2,7 +2,7 @@
 "use strict";
 (function () {
   function isStop(field) {
-    if (field.type === "hidden" || field.disabled || field.offsetParent === null) return false;
+    if (field.type === "hidden" || field.disabled || !field.checkVisibility()) return false;
     if ("station" in field.dataset && field.value) return false;
     // A group of boxes is one stop: its first. Space ticks, Tab goes through the rest.
     const group = field.closest(".checks");
