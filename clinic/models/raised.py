@@ -81,7 +81,8 @@ class EyeNow(models.Model):
     """The eye as it stands: a projection that can be rebuilt from the log at any time.
 
     One row an eye; no row means nothing was projected yet. It serves lists in a fixed number of
-    queries and is never a source. Personal data: pseudonymous.
+    queries and is never a source. ``alarm_since`` is the day of the oldest told alarm that nobody
+    answered. Personal data: pseudonymous.
     """
 
     eye = models.OneToOneField(Eye, on_delete=models.PROTECT, related_name="now")
@@ -115,13 +116,18 @@ class EyeNow(models.Model):
     iop_change_tenths = models.SmallIntegerField(null=True, blank=True)
     iop_since = models.DateField(null=True, blank=True)
     undecided_since = models.DateField(null=True, blank=True)
+    alarm_since = models.DateField(null=True, blank=True)
     history_entered = models.BooleanField(default=False)
     open_top_rank = models.CharField(max_length=12, blank=True)
     open_items = models.JSONField(default=list)
     digest = models.CharField(max_length=64, blank=True)
 
     class Meta:
-        indexes = [models.Index(fields=["booked_day"]), models.Index(fields=["due_day"])]
+        indexes = [
+            models.Index(fields=["booked_day"]),
+            models.Index(fields=["due_day"]),
+            models.Index(fields=["alarm_since"]),
+        ]
 
     def __str__(self) -> str:
         return f"{self.eye} now"

@@ -50,12 +50,8 @@ def alarmed(site: Site, day: dt.date, today: dt.date, said: Mapping[dt.date, str
     """Return whose told alarm nobody answered yet; they stand on today's and the next list."""
     if day not in (today, next_clinic_day(site, today, said)):
         return set()
-    rows = EyeNow.objects.filter(eye__patient__site=site, open_top_rank="raise_first")
-    return {
-        patient
-        for patient, items in rows.values_list("eye__patient_id", "open_items")
-        if any(one.get("rule") == "alarm_symptoms" and not one.get("stands") for one in items)
-    }
+    rows = EyeNow.objects.filter(eye__patient__site=site, alarm_since__isnull=False)
+    return set(rows.values_list("eye__patient_id", flat=True))
 
 
 def eyes_on(

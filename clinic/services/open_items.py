@@ -1,5 +1,6 @@
 """What stands open of an eye: raised at its last visit, and alarms until somebody answers."""
 
+import datetime as dt
 from collections.abc import Iterable, Mapping, Sequence
 from typing import Any
 
@@ -7,6 +8,7 @@ from clinic.adapters import UNMEASURED
 from clinic.models import Answer, Review
 
 Fields = dict[str, Any]
+TOLD = "alarm_symptoms"
 RANKS = ("raise_first", "weigh_today", "keep_in_mind")
 
 
@@ -51,6 +53,7 @@ def open_fields(reviews: Sequence[Review], answers: Sequence[Answer]) -> Fields:
                 items.append(_item(row, review, said))
     open_ranks = [item["rank"] for item in items if not item.get("stands")]
     top = next((rank for rank in RANKS if rank in open_ranks), "")
+    told = [dt.date.fromisoformat(item["visit_day"]) for item in items if _is_told(item)]
     outcomes = list(last.outcomes.values())
     reading: Fields = next((one.reading for one in reversed(reviews) if one.reading), {})
     from_day = next((one.visit.day for one in reversed(reviews) if one.reading), None)
@@ -65,10 +68,16 @@ def open_fields(reviews: Sequence[Review], answers: Sequence[Answer]) -> Fields:
             },
         ],
         "open_top_rank": top,
+        "alarm_since": min(told, default=None),
         "reading": str(reading.get("reading", ""))[:160],
         "reading_from": from_day,
         "place": str(reading.get("place", ""))[:60],
     }
+
+
+def _is_told(item: Fields) -> bool:
+    """Say whether an item is an alarm that somebody told and nobody answered."""
+    return item["rule"] == TOLD and item["alarm"] and not item.get("stands")
 
 
 def _item(row: Mapping[str, Any], review: Review, said: Fields) -> Fields:
