@@ -9,7 +9,7 @@ from clinic.chart.spoken import day_words
 from clinic.models import Patient
 from clinic.selectors.judged import Found, judge
 from clinic.selectors.list_items import RANK_WORDS, RANKS
-from trends.measures.acuity import LETTER_E4
+from trends.measures.logmar import LETTER_E4
 from trends.review import comparisons
 from trends.visits import MISSING
 

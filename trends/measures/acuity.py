@@ -1,8 +1,7 @@
 """Visual acuity: six notations, one logMAR.
 
-logMAR = -log10(V), V the Snellen fraction (DICOM PS3.17 RR.2.2); ETDRS letters L = 85 - 50 logMAR
-(Gregori 2010; Beck 2003), so 85 letters are 20/20. Never the 100-based score. Everything is kept in
-ten-thousandths of logMAR (``_e4``) and recomputed from the text as typed, never chained.
+Everything is kept in ten-thousandths of logMAR (``_e4``, see ``logmar``) and recomputed from the
+text as typed, never chained.
 """
 
 import math
@@ -12,25 +11,35 @@ from functools import lru_cache
 
 from trends import words
 from trends.errors import EbblineError
+from trends.measures.logmar import (
+    E4,
+    LETTER_E4,
+    LINE_E4,
+    e4_of,
+    e4_of_letters,
+    half_up,
+    letters_of,
+    nearest_line,
+    snapped,
+    snellen_words,
+)
 from trends.measures.ranges import ranges
 
 FIVE_LETTER_CHARTS = ("etdrs", "electronic_etdrs")
-E4 = 10_000
-LETTER_E4 = 200
-LINE_E4 = 1_000
-SNAP_E4 = 60
-"""A printed label is at most 0.0051 logMAR off its line; 0.006 takes in every standard label and
-none of the others (reference table of ISO 8596 line sizes)."""
 
 FRACTION = re.compile(
     r"^([0-9]{1,4}(?:[.,][0-9]+)?)\s*/\s*([0-9]{1,5}(?:[.,][0-9]+)?)\s*([+-]\s*[0-9]+)?$"
 )
+TYPOGRAPHIC_MINUS = "\u2212"
 NUMBER = re.compile(r"^[+-]?[0-9]{1,3}(?:[.,][0-9]{1,4})?$")
 OFF_CHART = re.compile(
     r"^(NLP|LP|HM|CF)(?:\s+(with|without)\s+projection)?"
     r"(?:\s+(?:at\s+)?([0-9]+(?:[.,][0-9]+)?)\s*(m|cm|ft))?$",
     re.IGNORECASE,
 )
+
+
+METRES = {"m": 1.0, "cm": 0.01, "ft": 0.3048}
 
 
 class AcuityRefused(EbblineError):
@@ -42,7 +51,8 @@ class Acuity:
     """One acuity. ``level`` orders NLP < LP < HM < CF < chart; off the chart there is no number.
 
     ``letters`` is None below 0 (off scale); ``five_letters`` whether letters may be counted;
-    ``scale`` names what it may be compared with; ``assumed`` and ``doubts`` are shown with it.
+    ``fraction`` is the Snellen fraction as typed, the suffix apart; ``scale`` names what it may be
+    compared with; ``assumed`` and ``doubts`` are shown with it.
     """
 
     notation: str
@@ -54,6 +64,7 @@ class Acuity:
     letters: int | None = None
     five_letters: bool = False
     approximate: bool = False
+    fraction: float | None = None
     suffix: int = 0
     distance: str = ""
     assumed: tuple[str, ...] = ()
@@ -69,33 +80,6 @@ def refuse(notation: str, text: str, allowed: str, why: str) -> AcuityRefused:
         why,
         "Check the notation and the value on the chart sheet.",
     )
-
-
-def half_up(numerator: int, denominator: int) -> int:
-    """Return a quotient rounded half up, in whole numbers (``round`` would go half to even)."""
-    return (2 * numerator + denominator) // (2 * denominator)
-
-
-def e4_of(fraction: float) -> int:
-    """Return logMAR in ten-thousandths of a Snellen fraction."""
-    return math.floor(-math.log10(fraction) * E4 + 0.5)
-
-
-def letters_of(logmar_e4: int) -> int | None:
-    """Return whole ETDRS letters of a logMAR, half up; None below 0 (off scale)."""
-    letters = half_up(85 * E4 - 50 * logmar_e4, E4)
-    return min(letters, 100) if letters >= 0 else None
-
-
-def e4_of_letters(letters: int) -> int:
-    """Return logMAR in ten-thousandths of an ETDRS letter score."""
-    return 17_000 - LETTER_E4 * letters
-
-
-def snapped(logmar_e4: int) -> int:
-    """Return the nominal line of a printed label; other values unchanged."""
-    line = LINE_E4 * half_up(logmar_e4, LINE_E4)
-    return line if abs(logmar_e4 - line) <= SNAP_E4 else logmar_e4
 
 
 def decimal_number(text: str) -> float:
@@ -118,7 +102,7 @@ def parse(notation: str, text: str, chart: str = "") -> Acuity:
 
     The notation is never guessed: a bare 0.5 is 20/40 as decimal and 20/63 as logMAR.
     """
-    text = " ".join(text.split())
+    text = " ".join(text.split()).replace(TYPOGRAPHIC_MINUS, "-")
     if notation not in words.NOTATIONS:
         raise refuse(
             notation,
@@ -164,8 +148,9 @@ def _logmar(notation: str, text: str, chart: str) -> Acuity:
 def _decimal(notation: str, text: str, chart: str) -> Acuity:
     if not NUMBER.match(text) or decimal_number(text) <= 0:
         raise refuse(notation, text, "a number above 0 such as 0.5", "Decimal 1.0 is 20/20.")
-    line = snapped(e4_of(decimal_number(text)))
-    return _whole(notation, text, chart, line, approximate=line % LINE_E4 != 0)
+    fraction = decimal_number(text)
+    line = snapped(e4_of(fraction))
+    return _whole(notation, text, chart, line, fraction=fraction, approximate=line % LINE_E4 != 0)
 
 
 def _snellen(notation: str, text: str, chart: str) -> Acuity:
@@ -175,18 +160,21 @@ def _snellen(notation: str, text: str, chart: str) -> Acuity:
             notation, text, "a fraction such as 20/40 or 6/12", "Both numbers are above 0."
         )
     suffix = int((match[3] or "0").replace(" ", ""))
-    if abs(suffix) > 3:
-        raise refuse(notation, text, "a suffix of -3 to +3", "More letters would be another line.")
-    line = snapped(e4_of(decimal_number(match[1]) / decimal_number(match[2])))
+    most = ranges("acuity_suffix")
+    if abs(suffix) > most.number("most"):
+        raise refuse(notation, text, most.text("allowed"), most.text("why"))
+    fraction = decimal_number(match[1]) / decimal_number(match[2])
+    line = snapped(e4_of(fraction))
     five = scale_of(notation, chart)[0] in FIVE_LETTER_CHARTS
     return _whole(
         notation,
         text,
         chart,
         line - LETTER_E4 * suffix if five else line,
+        fraction=fraction,
         suffix=suffix,
         approximate=line % LINE_E4 != 0 or (suffix != 0 and not five),
-        doubts=_distance_doubt(notation, decimal_number(match[1])),
+        doubts=_distance_doubt(notation, decimal_number(match[1])) + _suffix_doubt(suffix),
     )
 
 
@@ -199,6 +187,12 @@ def _distance_doubt(notation: str, distance: float) -> tuple[str, ...]:
     return ()
 
 
+def _suffix_doubt(suffix: int) -> tuple[str, ...]:
+    # From memory, check the original: a line of five counts as read with three of its letters.
+    doubt = f"{-suffix} letters of the line missed: was the line above meant?"
+    return (doubt,) if suffix <= -ranges("acuity_suffix").number("ask_from") else ()
+
+
 def _off_chart(text: str, chart: str) -> Acuity:
     match = OFF_CHART.match(text)
     if not match:
@@ -209,7 +203,11 @@ def _off_chart(text: str, chart: str) -> Acuity:
             "Below the chart only a category is recorded, never a number.",
         )
     level = words.OFF_CHART.index(match[1].upper())
-    distance = f"{match[3]} {match[4]}" if match[3] else ""
+    distance = f"{match[3]} {match[4].lower()}" if match[3] else ""
+    bounds = ranges("off_chart_distance")
+    metres = decimal_number(match[3]) * METRES[match[4].lower()] if match[3] else None
+    if metres is not None and not 0 < metres <= bounds.number("most_metres"):
+        raise refuse("off_chart", text, bounds.text("allowed"), bounds.text("why"))
     return Acuity("off_chart", text, chart, "off_chart", level, distance=distance)
 
 
@@ -218,64 +216,15 @@ def checked(notation: str, text: str, chart: str = "") -> Acuity:
     acuity = parse(notation, text, chart)
     if acuity.logmar_e4 is None or notation == "etdrs_letters":
         return acuity
-    name = "logmar_e4" if notation == "logmar" else "fraction_logmar_e4"
-    bounds = ranges(name)
-    low, high = bounds.number("least"), bounds.number("most")
-    plain = acuity.logmar_e4 + (LETTER_E4 * acuity.suffix if acuity.five_letters else 0)
-    if not low <= plain <= high:
-        raise refuse(
-            notation, text, bounds.text("allowed"), f"That would be {snellen_words(plain)}."
-        )
+    if acuity.fraction is not None:
+        bounds, entered, unit = ranges("snellen_fraction"), acuity.fraction, 1000
+    else:
+        bounds, entered, unit = ranges("logmar_e4"), float(acuity.logmar_e4), 1
+    if not bounds.number("least") / unit <= entered <= bounds.number("most") / unit:
+        exact = e4_of(acuity.fraction) if acuity.fraction is not None else acuity.logmar_e4
+        refused = f"That would be {snellen_words(exact)}."
+        raise refuse(notation, text, bounds.text("allowed"), refused)
     return acuity
-
-
-def mean_e4(values: list[int]) -> float:
-    """Return the mean of logMARs (ten-thousandths); never average decimals (Holladay 1997)."""
-    return sum(values) / len(values)
-
-
-def denominator_20(logmar_e4: float) -> float:
-    """Return the Snellen denominator at 20 feet."""
-    return float(20 * 10 ** (logmar_e4 / E4))
-
-
-def letters_from_test(letters_at_4m: int, letters_at_1m: int | None = None) -> int:
-    """Return the ETDRS score of a chart test: N4 + 30 if N4 is 20 or more, else N4 + N1.
-
-    From memory, check the original (ETDRS chart protocol). Raises ``AcuityRefused``.
-    """
-    if not 0 <= letters_at_4m <= 70:
-        raise refuse("etdrs_letters", str(letters_at_4m), "0 to 70 at 4 m", "14 lines of 5.")
-    if letters_at_4m >= 20:
-        return letters_at_4m + 30
-    if letters_at_1m is None or not 0 <= letters_at_1m <= 30:
-        raise refuse(
-            "etdrs_letters", str(letters_at_1m), "0 to 30 at 1 m", "Below 20 letters 1 m is tested."
-        )
-    return letters_at_4m + letters_at_1m
-
-
-def letters_from_100_based(score: int) -> int:
-    """Return ETDRS letters of a 100-based score (100 at 20/20), which must be declared as such."""
-    return score - 15
-
-
-def snellen_words(logmar_e4: int) -> str:
-    """Return the nearest line and, off the line, the exact denominator: ``20/40 (20/43.8)``."""
-    exact = denominator_20(logmar_e4)
-    line = nearest_line(logmar_e4)
-    if snapped(logmar_e4) % LINE_E4 == 0:
-        return line
-    return f"{line} (20/{exact:.1f})" if exact < 100 else f"{line} (20/{exact:.0f})"
-
-
-def nearest_line(logmar_e4: int) -> str:
-    """Return the label in feet of the nearest standard line; outside the chart, the exact one."""
-    labels = ranges("lines").texts("feet")
-    place = half_up(logmar_e4, LINE_E4) + 3
-    if not 0 <= place < len(labels):
-        return f"20/{denominator_20(logmar_e4):.0f}"
-    return labels[place]
 
 
 def implied(acuity: Acuity) -> dict[str, str]:
@@ -285,8 +234,11 @@ def implied(acuity: Acuity) -> dict[str, str]:
     mark = "≈ " if acuity.approximate or acuity.notation != "etdrs_letters" else ""
     letters = "below the scale" if acuity.letters is None else f"{mark}{acuity.letters} letters"
     hundredths = half_up(acuity.logmar_e4, 100)
-    return {
+    shown = {
         "letters": letters,
         "logmar": f"{hundredths / 100:.2f} logMAR",
         "snellen": f"≈ {snellen_words(acuity.logmar_e4)}",
     }
+    if acuity.notation == "snellen_m":
+        return shown
+    return {**shown, "snellen_m": f"≈ {nearest_line(acuity.logmar_e4, 'metres')}"}

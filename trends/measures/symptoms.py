@@ -45,7 +45,7 @@ def parse(text: str) -> Symptoms | None:
     gone: list[str] = []
     for token in tokens:
         name = token.removesuffix(GONE)
-        if name not in (*words.SYMPTOMS, NONE) or (name == NONE and len(tokens) > 1):
+        if name not in (*words.SYMPTOMS, NONE) or (name == NONE and tokens != [NONE]):
             raise SymptomsRefused(
                 "symptoms",
                 text,

@@ -7,7 +7,7 @@ import numpy as np
 
 from trends import words
 from trends.frames import SCALES
-from trends.measures.acuity import e4_of_letters
+from trends.measures.logmar import e4_of_letters
 from trends.visits import MISSING, Ints, Visits, sorted_visits
 
 FIRST_DAY = dt.date(2019, 1, 7)
