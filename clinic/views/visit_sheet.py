@@ -99,6 +99,10 @@ def _store(
         for side, form in forms.items()
         if not form.is_blank or stored[side] is not None
     }
+    if not eyes:
+        raise PartRefused(
+            part, "(blank)", "at least one field", "Nothing was typed.", "Fill in what was done."
+        )
     return part_save(
         part=part,
         patient=patient,

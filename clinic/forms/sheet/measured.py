@@ -86,7 +86,10 @@ class MeasuredForm(EyeForm):
     def __init__(self, *args: Any, **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)
         # A retired scanner stays choosable where it was used, or a correction would drop it.
-        used = Q(retired_on=None) | Q(retired_on__gt=self.day) | Q(pk=self.initial.get("scanner"))
+        used = Q(retired_on=None) | Q(retired_on__gt=self.day)
+        # From a draft it is text, and blank where none was chosen.
+        if str(self.initial.get("scanner") or "").isdecimal():
+            used |= Q(pk=self.initial["scanner"])
         scanners = Scanner.objects.filter(used, site=self.site).order_by("label")
         self.fields["scanner"].queryset = scanners  # type: ignore[attr-defined]
         self.read: dict[str, acuities.Acuity] = {}

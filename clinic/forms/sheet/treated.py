@@ -58,6 +58,8 @@ class TreatedForm(EyeForm):
             self.add_error("outcome", "Nothing given, but an agent or laser is chosen.")
         if outcome == "not_given" and not data.get("not_given_because"):
             self.add_error("not_given_because", "Planned but not given: say why in a few words.")
+        if data.get("dose2") and not data.get("agent2"):
+            self.add_error("agent2", "A second dose is typed: choose its agent.")
         return data
 
     def values(self) -> dict[str, Any]:
