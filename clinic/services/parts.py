@@ -36,9 +36,8 @@ from clinic.services.part_checks import (
     note_checked,
     word_checked,
 )
-from clinic.services.projection import eye_now_refresh
 from clinic.services.refusals import Conflict, PartRefused, ReasonNeeded, reason_given
-from clinic.services.reviews import review_person
+from clinic.services.renewal import renew
 from clinic.services.revisions import (
     Children,
     children_store,
@@ -280,7 +279,7 @@ def _after(
         payload={"notes": notes},
     )
     corrected = {Revision.Change.CORRECTION, Revision.Change.WITHDRAWN} & set(changes.values())
-    review_person(
+    renew(
         patient=post.patient,
         from_day=visit.day,
         by=post.by,
@@ -288,7 +287,6 @@ def _after(
         today=post.today,
         why="after a correction" if corrected else "after an entry",
     )
-    eye_now_refresh(patients=[post.patient])
 
 
 @transaction.atomic

@@ -40,7 +40,7 @@ from clinic.services.person_checks import (
 )
 from clinic.services.projection import eye_now_refresh
 from clinic.services.refusals import PartRefused, reason_given
-from clinic.services.reviews import review_person
+from clinic.services.renewal import renew
 from clinic.services.revisions import repeats
 
 Values = Mapping[str, Any]
@@ -145,8 +145,7 @@ def _noted(
 ) -> None:
     """Record a new fact of an eye; reviews from its day on may read differently."""
     ledger.record(chain=patient, action=action, by=by, at=at, rows=[row])
-    review_person(patient=patient, from_day=from_day, by=by, at=at, today=today, why=action)
-    eye_now_refresh(patients=[patient])
+    renew(patient=patient, from_day=from_day, by=by, at=at, today=today, why=action)
 
 
 @transaction.atomic

@@ -11,19 +11,28 @@ from typing import Any
 
 from clinic import adapters
 from clinic.canonical import canonical_text
-from clinic.models import Answer, EyeNow, History, Patient, Plan, Review
+from clinic.models import Answer, EyeNow, Patient, Plan, Review
 from clinic.services.last_values import visit_fields
 from clinic.services.open_items import Fields, newest_place, open_fields
 from clinic.services.plan_in_force import due_in_force
 from trends.review import comparisons
 
 BATCH = 400
+Read = tuple[adapters.Records, adapters.Loaded]
 
 
-def fields_of(patients: Sequence[Patient]) -> dict[int, Fields]:
-    """Return the projection of every eye of some patients, computed from the log alone."""
+def read_of(patients: Sequence[Patient]) -> Read:
+    """Return the records of some patients, and the same as columns."""
     records = adapters.read(patients)
-    loaded = adapters.from_records(records, {patient.pk: patient for patient in patients})
+    return records, adapters.from_records(records, {patient.pk: patient for patient in patients})
+
+
+def fields_of(patients: Sequence[Patient], read: Read | None = None) -> dict[int, Fields]:
+    """Return the projection of every eye of some patients, computed from the log alone.
+
+    ``read`` holds their records where the caller has just read them.
+    """
+    records, loaded = read or read_of(patients)
     eyes = list(records.eyes)
     return fields_from(
         records,
@@ -31,7 +40,7 @@ def fields_of(patients: Sequence[Patient]) -> dict[int, Fields]:
         plans=_plans(eyes),
         reviews=_reviews(eyes),
         answers=_answers(eyes),
-        histories=set(History.objects.filter(eye_id__in=eyes).values_list("eye_id", flat=True)),
+        histories=set(records.histories),
     )
 
 
@@ -145,24 +154,29 @@ NAMES = [
 ]
 
 
-def rows_for(patients: Sequence[Patient]) -> list[EyeNow]:
+def rows_for(patients: Sequence[Patient], read: Read | None = None) -> list[EyeNow]:
     """Return unsaved projections of every eye of some patients."""
     return [
         EyeNow(eye_id=eye, **fields, digest=digest_of(fields))
-        for eye, fields in fields_of(patients).items()
+        for eye, fields in fields_of(patients, read).items()
     ]
 
 
 def eye_now_refresh(*, patients: Sequence[Patient]) -> None:
     """Write the projection of some patients' eyes anew; inside the caller's transaction."""
     for start in range(0, len(patients), BATCH):
-        EyeNow.objects.bulk_create(
-            rows_for(patients[start : start + BATCH]),
-            update_conflicts=True,
-            unique_fields=["eye"],
-            update_fields=[name.removesuffix("_id") for name in NAMES],
-            batch_size=200,
-        )
+        eye_now_write(rows_for(patients[start : start + BATCH]))
+
+
+def eye_now_write(rows: Sequence[EyeNow]) -> None:
+    """Write projections over the ones that stand."""
+    EyeNow.objects.bulk_create(
+        rows,
+        update_conflicts=True,
+        unique_fields=["eye"],
+        update_fields=[name.removesuffix("_id") for name in NAMES],
+        batch_size=200,
+    )
 
 
 def differing(patients: Sequence[Patient]) -> list[int]:

@@ -87,9 +87,10 @@ def review_person(
     at: dt.datetime,
     today: dt.date,
     why: str,
+    loaded: adapters.Loaded | None = None,
 ) -> list[Review]:
     """Review a person's visits of both eyes from a day on; inside the caller's transaction."""
-    found = judge([patient], max(today, from_day), lambda place: place.day >= from_day)
+    found = judge([patient], max(today, from_day), lambda place: place.day >= from_day, loaded)
     newest = newest_reviews([patient.pk])
     found += vanished(found, newest, from_day)
     rows = rows_of(changed(found, newest), newest, by=by, at=at, why=why)
