@@ -67,6 +67,12 @@ def signed(number: float | None) -> str:
 
 
 @register.filter
+def signed_mmhg(tenths: int | None) -> str:
+    """Return a change of tenths of mmHg as mmHg with its sign."""
+    return signed(None if tenths is None else tenths / 10)
+
+
+@register.filter
 def questions(field: BoundField) -> list[str]:
     """Return the questions about an unlikely value of a field that aren't settled."""
     return list(getattr(field.form, "asked", {}).get(field.name, []))
