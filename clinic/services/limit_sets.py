@@ -51,7 +51,20 @@ def from_memory(limits: LimitSet) -> list[str]:
 def adoption_propose(
     *, site: Site, limit_set: LimitSetText, cause: str = "", by: User, at: dt.datetime
 ) -> Adoption:
-    """Propose a set for a cause ("" for every cause); not in force until confirmed."""
+    """Propose a set for a cause ("" for every cause); not in force until confirmed.
+
+    Raises ``AdoptionRefused`` for a cause the set isn't made for.
+    """
+    made_for = parsed(limit_set.text).causes
+    if cause and cause not in made_for:
+        raise AdoptionRefused(
+            "cause",
+            cause,
+            ", ".join(made_for),
+            "Limits made for one cause say nothing of another.",
+            "Choose a set that names this cause.",
+        )
+    Site.objects.select_for_update().only("pk").get(pk=site.pk)
     last = Adoption.objects.filter(site=site).aggregate(last=Max("seq"))["last"] or 0
     adoption = Adoption.objects.create(
         site=site,
@@ -97,6 +110,14 @@ def adoption_confirm(
 
 
 def _refuse_unfit(adoption: Adoption, ticked: Collection[str], by: User) -> None:
+    if AdoptionConfirmed.objects.filter(adoption=adoption).exists():
+        raise AdoptionRefused(
+            "adoption",
+            str(adoption.limit_set),
+            "a proposal that waits",
+            "It was confirmed before.",
+            "Load the page again.",
+        )
     is_clinician = Membership.objects.filter(
         user=by, site=adoption.site, role=Membership.Role.CLINICIAN, active=True
     ).exists()

@@ -8,10 +8,12 @@ import datetime as dt
 from collections.abc import Collection, Iterable, Mapping, Sequence
 
 from django.db import transaction
+from django.db.models import Max
 
 from clinic import adapters
 from clinic.models import Patient, Review, User
 from clinic.selectors.judged import Found, judge, nothing
+from clinic.services.locks import locked_all
 from trends import ENGINE_VERSION
 from trends.wording import set_names
 
@@ -114,7 +116,8 @@ def review_latest(
 ) -> list[Review]:
     """Review the newest visit of each eye, and what came after it: after intake or adoption.
 
-    Computed outside the transaction, written in one short one.
+    Computed outside the transaction, written in one short one. What somebody else reviewed in the
+    meantime stands: it was made with the same set, on newer values.
     """
     rows: list[Review] = []
     for start in range(0, len(patients), BATCH):
@@ -124,22 +127,19 @@ def review_latest(
         found = judge(some, today, loaded.is_newest, loaded)
         rows += rows_of(changed(found, newest), newest, by=by, at=at, why=why)
     with transaction.atomic():
+        locked_all(patients)
+        taken = last_numbers(rows)
+        rows = [row for row in rows if row.seq == taken.get((row.visit_id, row.eye_id), 0) + 1]
         Review.objects.bulk_create(rows, batch_size=500)
     return rows
 
 
-def review_shown(*, patient: Patient, by: User, at: dt.datetime, today: dt.date) -> list[Review]:
-    """Review what of a person was never reviewed: back-filled history, when it is viewed."""
-    newest = newest_reviews([patient.pk])
-    loaded = adapters.load([patient])
-    lacking = {
-        (place.visit_id, place.eye_id)
-        for place in loaded.places
-        if (place.visit_id, place.eye_id) not in newest
-    }
-    if not lacking:
-        return []
-    found = judge([patient], today, lambda place: (place.visit_id, place.eye_id) in lacking, loaded)
-    rows = rows_of(found, newest, by=by, at=at, why="by today's set")
-    with transaction.atomic():
-        return Review.objects.bulk_create(rows)
+def last_numbers(rows: Sequence[Review]) -> dict[tuple[int, int], int]:
+    """Return the number of the newest stored review of each (visit, eye) of some rows."""
+    visits = sorted({row.visit_id for row in rows})
+    found: dict[tuple[int, int], int] = {}
+    for start in range(0, len(visits), BATCH):
+        some = Review.objects.filter(visit_id__in=visits[start : start + BATCH])
+        for visit, eye, seq in some.values_list("visit_id", "eye_id").annotate(last=Max("seq")):
+            found[visit, eye] = seq
+    return found
