@@ -104,17 +104,73 @@ def rise(v: Visits, c: Comparisons, limits: Table) -> Rise:
     return Rise(v, c, limits)
 
 
+def class_name(v: Visits, row: int) -> str:
+    """Return the class under which the limits of a row stand."""
+    code = int(v.oct_class[row])
+    unknown = "assumed" if int(v.scanner_assumed[row]) else "class not recorded"
+    return words.OCT_CLASSES[code] if code >= 0 else unknown
+
+
 def limit_words(v: Visits, limits: Table, row: int) -> str:
     """Return the limit of a row's class in words."""
-    code = int(v.oct_class[row])
-    name = words.OCT_CLASSES[code] if code >= 0 else "assumed"
+    name = class_name(v, row)
     permille, um = limits.get(f"permille_{name}"), limits.get(f"um_{name}")
     if permille is None:
         return "no limit for this class: a site choice"
     return f"at least {permille / 10:g} %" + (f" and more than {um} µm" if um is not None else "")
 
 
-def describe_change(v: Visits, judged: Judged, row: int, limit: str) -> Description:
+def is_poor(v: Visits, row: int) -> bool:
+    """Say whether a scan was said to be poor."""
+    return int(v.scan_quality[row]) == words.QUALITIES.index("poor")
+
+
+def provisional(v: Visits, row: int) -> str:
+    """Return what a sentence adds on a poor scan: its change is shown, never silenced."""
+    return "; provisional, the scan is poor" if is_poor(v, row) else ""
+
+
+def doubts(v: Visits, judged: Judged, row: int, ref: int) -> list[str]:
+    """Return what makes a comparison weaker: poor scan, another scanner, values passed over."""
+    found = []
+    if is_poor(v, row):
+        found.append("the scan is poor: repeat the scan before the patient leaves")
+    if ref >= 0 and v.text("scanner", ref) != v.text("scanner", row):
+        was, now = (v.text("scanner", one) or "not recorded" for one in (ref, row))
+        found.append(f"scanner {was} on {saying.day(v, ref)}, {now} now, of the same class")
+    passed = judged.extra.get("skipped")
+    over = int(passed[row]) if passed is not None else -1
+    if over >= 0:
+        found.append(
+            f"passed over, not comparable: CST {v.cst_um[over]} µm ({class_name(v, over)}) "
+            f"on {saying.day(v, over)}"
+        )
+    start = int(v.offsets[v.eye[row]])
+    if ref < 0 and int(v.breaks[row]) > int(v.breaks[start]):
+        found.append("an eye event lies between this scan and earlier ones")
+    return found
+
+
+def noise_words(v: Visits, limits: Table, row: int, ref: int) -> str:
+    """Return the class's measurement error beside the change, and whether it is exceeded."""
+    name, found = class_name(v, row), ""
+    for table in (limits, limits.others.get("thickening")):
+        um = table.get(f"um_{name}") if table is not None else None
+        permille = table.get(f"permille_{name}") if table is not None else None
+        found = found or (f"{um} µm" if um is not None else "")
+        found = found or (f"{permille / 10:g} %" if permille is not None else "")
+    if not found:
+        return "no published repeatability for this class"
+    if ref < 0:
+        return f"two scans of this class differ by up to {found} by chance"
+    change, before = abs(int(v.cst_um[row]) - int(v.cst_um[ref])), int(v.cst_um[ref])
+    size, unit = found.split(" ")
+    exceeded = change > int(size) if unit == "µm" else 1000 * change > float(size) * 10 * before
+    verb = "exceeds that" if exceeded else "doesn't exceed that"
+    return f"two scans of this class differ by up to {found} by chance; the change {verb}"
+
+
+def describe_change(v: Visits, judged: Judged, row: int, limit: str, limits: Table) -> Description:
     """Put one change of thickness into words."""
     ref, now = int(judged.ref[row]), int(v.cst_um[row])
     eye = saying.eye(v, row)
@@ -125,6 +181,7 @@ def describe_change(v: Visits, judged: Judged, row: int, limit: str) -> Descript
             f"{eye}: CST {now} µm, nothing comparable before it",
             values=saying.values(v, row, ref, "cst_um"),
             limit=limit,
+            unknowns=doubts(v, judged, row, ref),
         )
     before = int(v.cst_um[ref])
     change = now - before
@@ -133,7 +190,7 @@ def describe_change(v: Visits, judged: Judged, row: int, limit: str) -> Descript
     percent = saying.percent(change, before)
     sentence = (
         f"{eye}: CST {verb}{size} ({before} to {now}, {percent})"
-        f"{saying.since(v, row, ref)}{saying.treatment_gap(v, row)}"
+        f"{saying.since(v, row, ref)}{saying.treatment_gap(v, row)}{provisional(v, row)}"
     )
     return Description(
         sentence=sentence,
@@ -143,7 +200,8 @@ def describe_change(v: Visits, judged: Judged, row: int, limit: str) -> Descript
             f"{now} − {before} = {change} µm",
         ],
         limit=limit,
-        noise="two scans of one class differ by up to about 10 % or 20 µm by chance",
+        noise=noise_words(v, limits, row, ref),
+        unknowns=doubts(v, judged, row, ref),
         options=[
             "repeat the scan before the patient leaves, if the scan is doubtful",
             "weigh the change together with acuity, fluid and the regimen's reading",

@@ -6,6 +6,7 @@ visits at once, and ``describe(v, judged, row, limits) -> Description`` for one 
 
 from collections.abc import Sequence
 from dataclasses import dataclass, field
+from functools import cache
 from typing import Any
 
 import numpy as np
@@ -46,6 +47,7 @@ def bit(column: str) -> int:
     return 1 << MISSABLE.index(column)
 
 
+@cache
 def columns_of(bits: int) -> tuple[str, ...]:
     """Return the columns of some bits, in the order of the list."""
     return tuple(name for place, name in enumerate(MISSABLE) if int(bits) >> place & 1)
@@ -154,6 +156,7 @@ def judged_one(
     missing: Ints,
     still: Any = False,
     since: Ints | None = None,
+    extra: dict[str, Any] | None = None,
 ) -> Judged:
     """Make the ``Judged`` of a rule with one part; ``rank`` is the word of the limit set."""
     outcome = verdict(known=known, applies=applies, raised=raised, still=still)
@@ -165,4 +168,5 @@ def judged_one(
         part=np.where(is_raised, 0, -1),
         missing=np.where(applies & ~np.asarray(known), missing, 0),
         since=since,
+        extra=extra or {},
     )

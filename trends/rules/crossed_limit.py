@@ -31,5 +31,4 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
 
 def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     """Put one row into words."""
-    limit = int(crossing.limit_by_sex(v, limits, unknown="m")[row])
-    return crossing.describe(v, judged, row, limit)
+    return crossing.describe(v, judged, row, limits, unknown="m")

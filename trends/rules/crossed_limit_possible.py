@@ -42,10 +42,10 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
         np.where(keep, found.part, -1),
         np.where(keep, found.missing, 0),
         found.since,
+        found.extra,
     )
 
 
 def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     """Put one row into words."""
-    limit = int(crossing.limit_by_sex(v, limits, unknown="f")[row])
-    return crossing.describe(v, judged, row, limit)
+    return crossing.describe(v, judged, row, limits, unknown="f")

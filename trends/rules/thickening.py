@@ -37,9 +37,10 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
         rank=str(limits["rank"]),
         ref=c.cst.ref,
         missing=rise.missing(unsure),
+        extra={"skipped": c.cst.skipped},
     )
 
 
 def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     """Put one row into words."""
-    return fluid.describe_change(v, judged, row, fluid.limit_words(v, limits, row))
+    return fluid.describe_change(v, judged, row, fluid.limit_words(v, limits, row), limits)

@@ -44,6 +44,7 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
         rank=str(limits["rank"]),
         ref=c.cst.ref,
         missing=missing,
+        extra={"skipped": c.cst.skipped},
     )
 
 
@@ -53,4 +54,4 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
         f"at least {limits.number('from_permille_SD-BM') / 10:g} % and under "
         f"{limits.number('below_permille_SD-BM') / 10:g} %"
     )
-    return fluid.describe_change(v, judged, row, limit)
+    return fluid.describe_change(v, judged, row, limit, limits)
