@@ -49,10 +49,10 @@ def default_day(site: Site, today: dt.date) -> dt.date:
     return next_clinic_day(site, today, said) or today
 
 
-def last_ended_day(site: Site, today: dt.date) -> dt.date:
+def last_ended_day(today: dt.date, said: Mapping[dt.date, str]) -> dt.date:
     """Return the last day that is over: yesterday, or today once it was closed.
 
     Standing rules are asked as of the end of a day: before that nobody failed to come.
     """
-    closed = exceptions(site).get(today) == ClinicDay.State.CLOSED
+    closed = said.get(today) == ClinicDay.State.CLOSED
     return today if closed else today - dt.timedelta(days=1)

@@ -5,7 +5,7 @@ The same functions of ``trends`` that judge a tidy file judge one row an eye, ma
 
 import datetime as dt
 from collections import defaultdict
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from typing import Any
 
 import numpy as np
@@ -49,9 +49,11 @@ def _day(day: dt.date | None) -> int:
     return day_number(day) if day is not None else MISSING
 
 
-def eyes_as_visits(rows: Sequence[EyeNow], site: Site, today: dt.date) -> Visits:
+def eyes_as_visits(
+    rows: Sequence[EyeNow], site: Site, today: dt.date, said: Mapping[dt.date, str]
+) -> Visits:
     """Return one row an eye; the eye's key stands for the person so that order is kept."""
-    said, ahead = exceptions(site), dict[dt.date, int]()
+    ahead: dict[dt.date, int] = {}
     cells = [_cells(now, site, said, ahead) for now in rows]
     columns = {
         name: np.array([one.get(name, absent) for one in cells], dtype=np.int32)
@@ -70,7 +72,8 @@ def standing_items(
     rows: Iterable[EyeNow], site: Site, today: dt.date
 ) -> dict[int, list[dict[str, Any]]]:
     """Return what standing rules raise as of the last ended day, by eye: rule, rank, sentence."""
-    as_of = last_ended_day(site, today)
+    said = exceptions(site)
+    as_of = last_ended_day(today, said)
     adopted = adopted_for(site)
     groups: dict[str, tuple[LimitSet | None, list[EyeNow]]] = {}
     for now in rows:
@@ -80,18 +83,14 @@ def standing_items(
     out: dict[int, list[dict[str, Any]]] = defaultdict(list)
     for limits, members in groups.values():
         if limits is not None:
-            _judge(members, site, as_of, limits, out)
+            visits = eyes_as_visits(members, site, as_of, said)
+            _judge(visits, as_of, limits, out)
     return out
 
 
 def _judge(
-    members: Sequence[EyeNow],
-    site: Site,
-    today: dt.date,
-    limits: LimitSet,
-    out: dict[int, list[dict[str, Any]]],
+    visits: Visits, today: dt.date, limits: LimitSet, out: dict[int, list[dict[str, Any]]]
 ) -> None:
-    visits = eyes_as_visits(members, site, today)
     reviewed = review(visits, limits, today, only=RULES)
     for rule in RULES:
         if rule not in reviewed.judged:
