@@ -3,25 +3,27 @@
 import argparse
 import datetime as dt
 import sys
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from pathlib import Path
 
-from trends import ENGINE_VERSION, limits, summary, tidy
+from trends import ENGINE_VERSION, cells, limits, summary, tidy
 from trends.citations import citation
 from trends.errors import EbblineError, FrameRefused, LimitSetRefused
 from trends.notice import NOTICE
 from trends.review import review
-from trends.wording import verdict_rows
+from trends.visits import Visits, day_date
+from trends.wording import VerdictRow, verdict_rows
 
 REFUSED = 2
 SHOWN_CELLS = 50
+ROWS_AT_ONCE = 1000
 
 
 def iso_date(text: str) -> dt.date:
     """Return an ISO date; argparse shows the sentence when it isn't one."""
     try:
-        return dt.date.fromisoformat(text)
-    except ValueError as error:
+        return day_date(cells.day(text))
+    except EbblineError as error:
         raise argparse.ArgumentTypeError(
             f"{text!r} is no date; allowed: a date such as 2026-03-04"
         ) from error
@@ -55,8 +57,23 @@ def parser() -> argparse.ArgumentParser:
     return top
 
 
+def worded(
+    visits: Visits, chosen: limits.LimitSet, options: argparse.Namespace
+) -> Iterator[VerdictRow]:
+    """Yield every verdict in words, person by person, so that a large file needs little memory."""
+    for part in visits.by_persons(ROWS_AT_ONCE):
+        yield from verdict_rows(
+            review(part, chosen, options.as_of), all_working=options.all_working
+        )
+
+
 def run_review(options: argparse.Namespace) -> int:
     """Judge a file; returns the exit code."""
+    if options.out.resolve() == options.visits.resolve():
+        print(
+            f"--out {options.out}: verdicts can't replace the visits they rest on", file=sys.stderr
+        )
+        return REFUSED
     try:
         chosen = limits.shipped(options.limit_set)
         visits = tidy.read(options.visits, options.as_of)
@@ -70,16 +87,14 @@ def run_review(options: argparse.Namespace) -> int:
     except (EbblineError, OSError) as error:
         print(error, file=sys.stderr)
         return REFUSED
-    reviewed = review(visits, chosen, options.as_of)
-    rows = verdict_rows(reviewed, all_working=options.all_working)
     try:
-        count = tidy.write(options.out, rows)
+        count = tidy.write(options.out, worded(visits, chosen, options))
     except OSError as error:
         print(f"{options.out} can't be written: {error}", file=sys.stderr)
         return REFUSED
     print(f"{count} verdicts on {len(visits)} visits written to {options.out}. {NOTICE}")
     if options.summary:
-        print(summary.text(reviewed))
+        print(summary.text(review(visits, chosen, options.as_of)))
     return 0
 
 

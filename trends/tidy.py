@@ -3,6 +3,7 @@
 import csv
 import datetime as dt
 import json
+import warnings
 from collections.abc import Iterable
 from pathlib import Path
 
@@ -35,8 +36,18 @@ def read(path: Path, as_of: dt.date) -> Visits:
     import pandas as pd
 
     try:
-        frame = pd.read_csv(path, dtype=str, keep_default_na=False, encoding="utf-8-sig")
-    except (UnicodeDecodeError, pd.errors.ParserError, pd.errors.EmptyDataError) as error:
+        # A line longer than the header would shift its cells into the wrong columns.
+        with warnings.catch_warnings():
+            warnings.simplefilter("error", pd.errors.ParserWarning)
+            frame = pd.read_csv(
+                path, dtype=str, keep_default_na=False, encoding="utf-8-sig", index_col=False
+            )
+    except (
+        UnicodeDecodeError,
+        pd.errors.ParserError,
+        pd.errors.ParserWarning,
+        pd.errors.EmptyDataError,
+    ) as error:
         cell = RefusedCell(0, "(file)", path.name, "a UTF-8 CSV file with a header", str(error))
         raise FrameRefused([cell]) from error
     visits = Visits.from_frame(frame)

@@ -4,8 +4,8 @@ Nothing here decides: it words what ``review`` found. Sentences state facts, nev
 """
 
 from collections.abc import Collection, Iterable, Iterator
-from dataclasses import dataclass
-from typing import Any
+from dataclasses import dataclass, replace
+from typing import Any, NamedTuple
 
 import numpy as np
 
@@ -81,11 +81,11 @@ def assumptions(reviewed: Reviewed, row: int) -> list[str]:
 def working(
     info: Any,
     said: Description,
-    table: Table | None,
+    cited: list[dict[str, Any]],
     reviewed: Reviewed,
     facts: dict[str, Any],
 ) -> dict[str, Any]:
-    """Return the nine parts of a shown verdict, JSON-able."""
+    """Return the nine parts of a shown verdict, JSON-able; ``cited`` as ``sources`` gives it."""
     name, version = set_names(reviewed.limits)
     unknowns = list(said.unknowns)
     unknowns += [f"not recorded or not comparable: {column}" for column in facts["missing"]]
@@ -100,7 +100,7 @@ def working(
             "limit_set": name,
             "limit_set_version": version,
         },
-        "source": sources(info.cites, table),
+        "source": cited,
         "noise": said.noise,
         "unknowns": unknowns,
         "options": said.options,
@@ -125,19 +125,22 @@ def rule_rows(
     """Yield the verdicts of one rule at chosen rows (eyes, for a standing rule)."""
     module = registry.by_id()[rule]
     table = table_for(reviewed.limits, rule, is_floor=module.INFO.floor)
-    judged = reviewed.judged[rule]
+    ruled = Ruled(module, table, reviewed.judged[rule], sources(module.INFO.cites, table))
     for row in chosen:
-        yield _rule_row(reviewed, module, table, judged, int(row), all_working)
+        yield _rule_row(reviewed, ruled, int(row), all_working)
 
 
-def _rule_row(
-    reviewed: Reviewed,
-    module: Any,
-    table: Table | None,
-    judged: Judged,
-    row: int,
-    all_working: bool,
-) -> VerdictRow:
+class Ruled(NamedTuple):
+    """One rule ready to be worded: its module, its entries, its outcomes, its sources."""
+
+    module: Any
+    table: Table | None
+    judged: Judged
+    cited: list[dict[str, Any]]
+
+
+def _rule_row(reviewed: Reviewed, ruled: Ruled, row: int, all_working: bool) -> VerdictRow:
+    module, table, judged, cited = ruled
     v, info = reviewed.visits, module.INFO
     standing = info.shape == "standing"
     first = int(v.offsets[row]) if standing else row
@@ -169,7 +172,7 @@ def _rule_row(
         reading="",
         limit_set=name,
         limit_set_version=version,
-        working=working(info, said, table, reviewed, facts) if worked else None,
+        working=working(info, said, cited, reviewed, facts) if worked else None,
     )
 
 
@@ -188,17 +191,18 @@ def regimen_rows(
     spoken = reviewed.regimens[regimen]
     wanted = None if chosen is None else set(chosen)
     readings = spoken.readings()
+    table = reviewed.limits.regimen(regimen) if reviewed.limits is not None else None
+    cited = sources(regimens.by_id()[regimen].INFO.cites, table)
     for place, row in enumerate(spoken.rows.tolist()):
         if wanted is None or row in wanted:
-            yield _regimen_row(reviewed, regimen, place, row, readings[place])
+            yield _regimen_row(reviewed, regimen, place, readings[place], cited)
 
 
 def _regimen_row(
-    reviewed: Reviewed, regimen: str, place: int, row: int, reading: str
+    reviewed: Reviewed, regimen: str, place: int, reading: str, cited: list[dict[str, Any]]
 ) -> VerdictRow:
     v, spoken = reviewed.visits, reviewed.regimens[regimen]
-    info = regimens.by_id()[regimen].INFO
-    table = reviewed.limits.regimen(regimen) if reviewed.limits is not None else None
+    info, row = regimens.by_id()[regimen].INFO, int(spoken.rows[place])
     outcome = int(spoken.outcome[place])
     missing = columns_of(int(spoken.missing[place]))
     said = spoken.describe(row) if reading else Description("")
@@ -224,7 +228,7 @@ def _regimen_row(
         reading=reading,
         limit_set=name,
         limit_set_version=version,
-        working=working(info, said, table, reviewed, facts) if reading else None,
+        working=working(info, said, cited, reviewed, facts) if reading else None,
     )
 
 
@@ -237,8 +241,6 @@ def fellow_rows(reviewed: Reviewed) -> list[VerdictRow]:
 
 
 def _fellow_row(reviewed: Reviewed, alarm: int, eye: int) -> VerdictRow:
-    from dataclasses import replace
-
     one = next(rule_rows(reviewed, "alarm_symptoms", [alarm]))
     side = words.SIDES[int(reviewed.visits.side[reviewed.visits.offsets[eye]])]
     name = "Right eye" if side == "R" else "Left eye"
