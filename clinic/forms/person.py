@@ -85,7 +85,7 @@ class HistoryForm(forms.Form):
         facts = [n for n, v in data.items() if n not in own and v not in (None, "")]
         if data.get("mode") != "entered" and facts:
             self.add_error("mode", "Facts of a history are filled in: choose 'has a history'.")
-        if data.get("mode") == "entered" and not facts:
+        if data.get("mode") == "entered" and not facts and not self.errors:
             self.add_error("mode", "Fill in at least one fact, or leave the history not entered.")
         return data
 

@@ -42,7 +42,11 @@ def active_eyes(here: Here) -> list[EyeNow]:
     newest = {row.patient_id: row.status for row in rows}
     away = [pk for pk, status in newest.items() if status != PatientStatus.Status.ACTIVE]
     eyes = EyeNow.objects.filter(eye__patient__site=here.site).exclude(eye__patient__in=away)
-    return list(eyes.select_related("eye__patient", "last_measured_visit").order_by("eye__patient__code", "-eye__side"))
+    return list(
+        eyes.select_related("eye__patient", "last_measured_visit").order_by(
+            "eye__patient__code", "-eye__side"
+        )
+    )
 
 
 def awaiting(here: Here, today: dt.date) -> list[Waiting]:

@@ -2,7 +2,7 @@
 
 import datetime as dt
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Any
 
 from clinic.models import EyeNow, EyeRecord, Measured, Patient, Scanner, Visit
@@ -73,6 +73,19 @@ def visit_sheet(here: Here, patient: Patient, day: dt.date, kind: str) -> Sheet:
         raised = raised_at(nows.get(side), day, kind)
         sheets.append(EyeSheet(side, name, records, last[side], nows.get(side), raised))
     return Sheet(visit, tuple(sheets), station)
+
+
+def sheet_opened_on(sheet: Sheet, part: str, revs: Mapping[str, int]) -> Sheet:
+    """Return the sheet with one part as it stood at the revisions it was opened on."""
+    eyes = []
+    for eye in sheet.eyes:
+        now = eye.records.get(part)
+        older = None
+        if now is not None and revs.get(eye.side):
+            rows = type(now)._default_manager.filter(visit=now.visit, eye=now.eye)
+            older = rows.filter(rev=revs[eye.side]).first()
+        eyes.append(replace(eye, records={**eye.records, part: older}))
+    return replace(sheet, eyes=tuple(eyes))
 
 
 def raised_at(now: EyeNow | None, day: dt.date, kind: str) -> tuple[Raised, ...]:

@@ -123,7 +123,7 @@ def _part(
             for eye in sheet.eyes
         ],
         "has_record": any(eye.records.get(part) for eye in sheet.eyes),
-        "asks": any(form.asked for form in forms.values()),
+        "asks": not any(form.errors for form in forms.values()),
     }
 
 

@@ -307,6 +307,7 @@ def test_two_people_at_one_part_both_see_both_versions(
     with stations(live_server, desk.recorder, desk.clinician) as (first, second):
         one, other = sheet(first, patient), sheet(second, patient)
         one.fill("[name=R-iop]", "18")
+        one.fill("[name=L-cst]", "377")
         save_measured(one)
         one.wait_for_selector("#part-measured .message.success")
         other.fill("[name=R-iop]", "19")
@@ -320,6 +321,8 @@ def test_two_people_at_one_part_both_see_both_versions(
         other.locator("button:has-text('Store mine')").click()
         other.wait_for_selector(".message.success")
         assert stored("R").iop_tenths == 190
+        # The second left the left eye blank: what the first stored there stays.
+        assert stored("L").cst_um == 377
         # What was typed in another part came back as a draft.
         assert other.input_value("[name=R-due_weeks]") == "8"
         assert first.told == second.told == []

@@ -20,6 +20,12 @@ from clinic.forms.sheet.words import AGENTS
 class NextForm(EyeForm):
     """When the next visit of this eye is due, and what is planned and booked."""
 
+    groups = (
+        ("due_weeks", "due_day"),
+        ("planned_agent", "planned_dose", "check_only"),
+        ("booked_day", "booked_time"),
+    )
+
     due_weeks = ParsedField(whole_number("due_weeks"), label="Due in weeks")
     due_day = IsoDateField(label="or due on")
     planned_agent = forms.ChoiceField(choices=choices(*AGENTS, blank="no agent"), required=False)

@@ -13,6 +13,8 @@ from clinic.models import Decided
 class DecidedForm(EyeForm):
     """What the clinician decided for one eye."""
 
+    groups = (("choice", "interval_weeks", "agent", "departs_because"),)
+
     choice = forms.ChoiceField(
         choices=[("", "not decided"), *Decided.Choice.choices], required=False, label="Decision"
     )

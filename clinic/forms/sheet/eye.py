@@ -27,6 +27,8 @@ class EyeForm(forms.Form):
 
     # Facts of the station that carry over; alone they are no measurement.
     station: tuple[str, ...] = ()
+    # Fields that belong to one value: of two versions they are taken from one, never mixed.
+    groups: tuple[tuple[str, ...], ...] = ()
 
     def __init__(self, *args: Any, site: Site, day: dt.date, **kwargs: Any) -> None:
         self.site, self.day = site, day

@@ -37,6 +37,14 @@ class MeasuredForm(EyeForm):
         "acuity2_chart",
     )
 
+    groups = (
+        ("cst", "scanner", "scan_quality"),
+        ("acuity", "acuity_notation", "acuity_chart", "acuity_correction", "acuity_distance"),
+        ("acuity2", "acuity2_notation", "acuity2_chart", "acuity2_correction"),
+        ("iop", "iop_method"),
+        ("iop2", "iop2_method"),
+    )
+
     cst = ParsedField(
         thickness.micrometres, label="CST (µm)", widget=TEXT(attrs={"inputmode": "numeric"})
     )

@@ -31,14 +31,3 @@ def rows(form: EyeForm) -> list[tuple[str, str]]:
     """Return label and words of every field that holds something."""
     pairs = [(label(form, name), told(form, name)) for name in form.fields if name not in UNTOLD]
     return [(name, words) for name, words in pairs if words]
-
-
-def both(theirs: EyeForm, mine: EyeForm) -> list[dict[str, Any]]:
-    """Return label and words of both versions of each field that either fills."""
-    found = []
-    for name in mine.fields:
-        one, other = told(theirs, name), told(mine, name)
-        if name not in UNTOLD and (one or other):
-            same = one == other
-            found.append({"label": label(mine, name), "theirs": one, "mine": other, "same": same})
-    return found

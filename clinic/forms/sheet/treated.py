@@ -14,6 +14,22 @@ from trends.measures import pressure
 class TreatedForm(EyeForm):
     """What was given to one eye, and the check after it."""
 
+    groups = (
+        (
+            "outcome",
+            "agent",
+            "dose",
+            "agent2",
+            "dose2",
+            "route",
+            "implant",
+            "lot",
+            "laser",
+            "not_given_because",
+        ),
+        ("iop_after", "iop_after_method"),
+    )
+
     outcome = forms.ChoiceField(
         choices=[("", "not recorded"), *Treated.Outcome.choices], required=False, label="Treatment"
     )

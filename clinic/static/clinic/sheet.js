@@ -42,6 +42,7 @@
       part.querySelector("form").dataset.typed = "yes";
     }
     goTo(part, stored);
+    if (name === "measured" && sheet.compareAgain) sheet.compareAgain();
   }
   function goTo(part, stored) {
     const wrong = stored ? null : part.querySelector("[aria-invalid=true], .wrong input, .wrong");

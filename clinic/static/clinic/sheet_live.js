@@ -40,6 +40,11 @@
       if (answer.ok) show(form, await answer.json());
     } catch (error) { /* The next field left asks again. */ }
   }
+  // A part that came back, or a draft: say again what its values read as.
+  function again() {
+    const form = document.querySelector("form.part-form[data-part=measured][data-typed=yes]");
+    if (form) compare(form);
+  }
   // The site's emergency text doesn't wait for the server.
   function alarm(box) {
     const ticked = box.querySelector("input[name$=-symptoms_now]:checked");
@@ -52,4 +57,6 @@
     if (box) alarm(box);
     compare(form);
   });
+  window.ebblineSheet.compareAgain = again;
+  again();
 })();
