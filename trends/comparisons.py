@@ -71,8 +71,3 @@ class Comparisons:
         """Eyes whose status lets every rule run; blank status is assumed to be in treatment."""
         out = [words.STATUSES.index(s) for s in ("stopped", "care_elsewhere", "not_followed")]
         return ~np.isin(self.v.status, out)
-
-    @cached_property
-    def certain_thickening(self) -> Bools:
-        """Filled by the thickening judgement; see ``noise.certainly_thicker``."""
-        raise AttributeError

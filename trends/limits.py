@@ -168,11 +168,9 @@ def floor() -> LimitSet:
 
 
 def table_for(limits: LimitSet | None, rule: str, *, is_floor: bool) -> Table | None:
-    """Return the entries a rule runs with, or None when it is off."""
+    """Return the entries a rule runs with, or None when it is off; no set moves the floor's own."""
     table = limits.rule(rule) if limits is not None else None
+    always = floor().rules[rule].entries if is_floor else {}
     if table is not None and limits is not None:
-        return replace(table, others=limits.rules)
-    if not is_floor:
-        return None
-    fallback = floor().rules[rule]
-    return Table(rule, fallback.entries, floor_only=True)
+        return replace(table, entries={**table.entries, **always}, others=limits.rules)
+    return Table(rule, always, floor_only=True) if is_floor else None

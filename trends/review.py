@@ -12,7 +12,7 @@ import numpy as np
 
 from trends import words
 from trends.comparisons import Comparisons
-from trends.limits import LimitSet, table_for
+from trends.limits import LimitSet, floor, table_for
 from trends.regimens import registry as regimens
 from trends.rules import registry
 from trends.ruling import Judged
@@ -58,8 +58,8 @@ class Reviewed:
 
 def comparisons(visits: Visits, limits: LimitSet | None) -> Comparisons:
     """Return the shared comparisons under a limit set's maximum age."""
-    table = table_for(limits, "comparison", is_floor=True)
-    return Comparisons(visits, table.number(SKIP_BACK_DAYS) if table else 0)
+    table = limits.rule("comparison") if limits is not None else None
+    return Comparisons(visits, (table or floor().rules["comparison"]).number(SKIP_BACK_DAYS))
 
 
 def causes_covered(visits: Visits, limits: LimitSet | None) -> Bools:

@@ -67,16 +67,23 @@ def _cst(v: Visits, row: int) -> tuple[str, str, str]:
     return "CST", str(int(v.cst_um[row])), method
 
 
+def _chart(v: Visits, row: int) -> str:
+    code = int(v.acuity_scale[row])
+    if not 0 <= code < len(words.CHARTS):
+        return "chart not recorded"
+    return f"{words.CHARTS[code].replace('_', ' ').replace('etdrs', 'ETDRS')} chart"
+
+
 def _acuity(v: Visits, row: int) -> tuple[str, str, str]:
     code = int(v.acuity_correction[row])
     correction = words.CORRECTIONS[code] if code >= 0 else "correction not recorded"
+    correction = f"{_chart(v, row)}, {correction}"
     level = int(v.acuity_level[row])
     if 0 <= level < words.ON_CHART:
-        return "acuity", words.OFF_CHART[level], correction
+        return "acuity", words.OFF_CHART[level], "off the chart"
     letters = int(v.letters[row])
-    shown = (
-        f"{letters} letters" if letters != MISSING else f"{v.logmar_e4[row] / 10_000:.2f} logMAR"
-    )
+    counted = letters != MISSING and int(v.five_letter_chart[row]) == 1
+    shown = f"{letters} letters" if counted else f"{v.logmar_e4[row] / 10_000:.2f} logMAR"
     return "acuity", shown, correction
 
 
@@ -115,6 +122,31 @@ def value(v: Visits, row: int, column: str) -> dict[str, Any]:
 def values(v: Visits, row: int, ref: int, column: str) -> list[dict[str, Any]]:
     """Return the reference's value and the row's own, where they are given."""
     return [value(v, one, column) for one in (ref, row) if is_given(v, one, column)]
+
+
+def own_value(v: Visits, row: int, what: str, shown: str, unit: str, method: str) -> dict[str, Any]:
+    """Return a value that has no column reader of its own, such as a treatment."""
+    return {
+        "what": what,
+        "value": shown,
+        "unit": unit,
+        "date": day_date(int(v.day[row])).isoformat(),
+        "eye": eye(v, row),
+        "method": method,
+        "as_entered": shown,
+    }
+
+
+def treatment_value(v: Visits, row: int) -> list[dict[str, Any]]:
+    """Return what was given at a row as a value; nothing where there is no row."""
+    if row < 0:
+        return []
+    return [own_value(v, row, "treatment", v.text("agents", row) or "not recorded", "", "given")]
+
+
+def baseline_values(v: Visits, rows: list[int]) -> list[dict[str, Any]]:
+    """Return the pressures a baseline is made of, named as such."""
+    return [{**value(v, one, "iop_mmhg"), "what": "IOP, for the baseline"} for one in rows]
 
 
 def iso(v: Visits, row: int) -> str:

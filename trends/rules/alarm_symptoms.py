@@ -47,8 +47,10 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     parts = [
         Part(applies, asked, present, RANKS["raise_first"], None, lacking),
         Part(applies, asked | fellow, fellow, RANKS["raise_first"], None, lacking),
-        Part(applies, asked, gone, RANKS[str(limits["rank_passed"])], None, lacking),
     ]
+    if not limits.floor_only:
+        passed = RANKS[str(limits["rank_passed"])]
+        parts.append(Part(applies, asked, gone, passed, None, lacking))
     judged = any_of(parts, applies)
     return Judged(
         judged.outcome,
@@ -60,29 +62,40 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     )
 
 
+def _fellow_eyes(v: Visits) -> Ints:
+    """Return for each eye the same person's other eye, -1 without one."""
+    person = v.person[v.offsets[:-1]]
+    same = person[1:] == person[:-1]
+    with_next = np.append(same, False)[: person.size]
+    with_last = np.insert(same, 0, False)[: person.size]
+    eyes = np.arange(person.size)
+    return np.where(with_next, eyes + 1, np.where(with_last, eyes - 1, -1))
+
+
 def _fellows(v: Visits, alarmed: Bools) -> tuple[Bools, list[tuple[int, int]]]:
     """Return the fellow's own rows to raise, and (row, fellow eye) where it has none that day.
 
-    Both eyes' last treatment must fall on one day. Only alarmed rows are walked: they are few.
+    Both eyes' last treatment must fall on one day.
     """
-    raised = np.zeros(len(v), dtype=bool)
-    lone: list[tuple[int, int]] = []
     days = last_treated_day(v)
-    for row in np.flatnonzero(alarmed & (days >= 0)).tolist():
-        other = int(v.eye[row]) + (1 if v.side[row] == 0 else -1)
-        if not 0 <= other < v.offsets.size - 1 or other < 0:
-            continue
-        start, end = int(v.offsets[other]), int(v.offsets[other + 1])
-        if v.person[start] != v.person[row]:
-            continue
-        before = start + np.flatnonzero((v.given[start:end] == 1) & (v.day[start:end] < v.day[row]))
-        if not before.size or v.day[before[-1]] != days[row]:
-            continue
-        same_day = start + np.flatnonzero(v.day[start:end] == v.day[row])
-        raised[same_day] = True
-        if not same_day.size:
-            lone.append((row, other))
-    return raised, lone
+    rows = np.flatnonzero(alarmed & (days >= 0))
+    others = _fellow_eyes(v)[v.eye[rows]]
+    rows, others = rows[others >= 0], others[others >= 0]
+    low, span = int(v.day.min(initial=0)), int(v.day.max(initial=0)) - int(v.day.min(initial=0)) + 1
+    keys = v.eye.astype(np.int64) * span + (v.day - low)
+    asked = others.astype(np.int64) * span + (v.day[rows] - low)
+    treated = np.flatnonzero(v.given == 1)
+    at = np.searchsorted(keys[treated], asked, side="left") - 1
+    hit = treated[np.maximum(at, 0)] if treated.size else at
+    same = (at >= 0) & (v.eye[hit] == others) & (v.day[hit] == days[rows])
+    rows, others, asked = rows[same], others[same], asked[same]
+    first, end = np.searchsorted(keys, asked, "left"), np.searchsorted(keys, asked, "right")
+    edges = np.zeros(len(v) + 1, dtype=np.int64)
+    np.add.at(edges, first, 1)
+    np.add.at(edges, end, -1)
+    lone = first == end
+    raised = np.cumsum(edges[:-1]) > 0
+    return raised, list(zip(rows[lone].tolist(), others[lone].tolist(), strict=True))
 
 
 def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
@@ -107,17 +120,8 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     first = which in (0, 1)
     return Description(
         sentence=sentence,
-        values=[
-            {
-                "what": "symptoms",
-                "value": shown,
-                "unit": "",
-                "date": saying.iso(v, row),
-                "eye": eye,
-                "method": "asked",
-                "as_entered": shown,
-            }
-        ],
+        values=saying.treatment_value(v, saying.last_treatment(v, row))
+        + [saying.own_value(v, row, "symptoms", shown, "", "asked")],
         limit="any of the list, present now",
         noise="none: a symptom is what the patient says",
         options=[] if first else ["ask again", "look again at the next visit"],

@@ -13,6 +13,7 @@ from trends import saying, words
 from trends.comparisons import Comparisons
 from trends.limits import Table
 from trends.ruling import Description, Judged, RuleInfo, bit, judged_one
+from trends.verdict import RAISED
 from trends.visits import Visits
 
 INFO = RuleInfo(
@@ -69,6 +70,6 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
         limit="one category down",
         noise="categories have no number; test-retest of CF and HM is 0.2 to 0.3 logMAR",
         not_for=["acuity taken through an occluded or bandaged eye"],
-        emergency=True,
+        emergency=int(judged.outcome[row]) == RAISED,
         reference_value=level_words(v, ref) if ref >= 0 else None,
     )

@@ -9,7 +9,7 @@ Raised: quality poor. Not: quality good or not recorded.
 
 import numpy as np
 
-from trends import saying, words
+from trends import history, saying, words
 from trends.comparable import last_before
 from trends.comparisons import Comparisons
 from trends.limits import Table
@@ -32,7 +32,7 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     """Judge all visits at once."""
     eye = v.eye.astype(np.int64)
     scanned_before = last_before(v, eye, c.cst_given)
-    ever = last_before(v, eye, v.given == 1) >= 0
+    ever = (last_before(v, eye, v.given == 1) >= 0) | history.treated_before_log(v)
     in_treatment = (v.status < 0) | (v.status == words.STATUSES.index("in_treatment"))
     treated = ever | in_treatment
     absent = ~c.cst_given & (scanned_before >= 0) & ~c.poor

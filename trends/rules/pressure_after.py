@@ -8,6 +8,8 @@ falsely than miss. Doesn't apply when nothing was given.
 Raised: 34 mmHg after an injection. Not: 22 after it.
 """
 
+from typing import Any
+
 import numpy as np
 
 from trends import saying, words
@@ -38,7 +40,6 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     lost = (v.symptoms_present & NO_PERCEPTION) > 0
     evidence = measured | lost
     applies = ~v.is_contact & (v.given != 0)
-    applies &= (v.given == 1) | evidence | c.measured_kind | (v.given < 0)
     recorded = measured | asked
     treated = (v.given == 1) | evidence
     lacking = np.where(v.given < 0, bit("agent"), bit("iop_after_mmhg"))
@@ -63,8 +64,8 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
         sentence += "; check again before the patient leaves"
     return Description(
         sentence=sentence,
-        arithmetic=[f"{shown(after)} mmHg"] if after != MISSING else [],
-        limit="30 mmHg and above after treatment; perception lost",
+        values=saying.treatment_value(v, row) + _after_values(v, row),
+        limit=_limit_words(limits),
         noise="a short rise after an injection is expected; it is seen within 60 minutes",
         options=[]
         if which == 0
@@ -76,3 +77,19 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
         not_for=["pressures before treatment"],
         emergency=which == 0,
     )
+
+
+def _after_values(v: Visits, row: int) -> list[dict[str, Any]]:
+    found = []
+    after = int(v.iop_after_tenths[row])
+    if after != MISSING:
+        found.append(saying.own_value(v, row, "IOP after", shown(after), "mmHg", "after treatment"))
+    if int(v.symptoms_present[row]) & NO_PERCEPTION:
+        found.append(saying.own_value(v, row, "symptoms", "no perception", "", "asked"))
+    return found
+
+
+def _limit_words(limits: Table) -> str:
+    if limits.floor_only:
+        return "perception lost"
+    return f"{shown(limits.number('after_tenths'))} mmHg and above after treatment; perception lost"
