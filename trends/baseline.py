@@ -55,19 +55,25 @@ class Baseline:
         return first_day(self.v, self.v.given == 1)
 
     @cached_property
-    def any_earlier(self) -> Bools:
-        """Whether the eye has a pressure by any tonometer on an earlier day."""
-        return np.asarray(self.last_any >= 0)
-
-    @cached_property
     def last_any(self) -> Ints:
         """The last pressure by any method on an earlier day, or NONE."""
         return last_before(self.v, self.v.eye.astype(np.int64), self.given)
 
     @cached_property
-    def same_tonometer(self) -> Bools:
-        """Whether the same tonometer read this eye on an earlier day."""
-        return last_before(self.v, self.group, self.given) >= 0
+    def anchor_day(self) -> Ints:
+        """The last day a baseline may be from: the steroid's if one came before, else treatment's.
+
+        Always before the visit's own day.
+        """
+        after_steroid = self.steroid_day < self.v.day
+        anchor = np.where(after_steroid, self.steroid_day, self.treatment_day)
+        return np.minimum(anchor, self.v.day.astype(np.int64) - 1)
+
+    @cached_property
+    def any_in_time(self) -> Bools:
+        """Whether any tonometer read this eye early enough for a baseline."""
+        first = first_day(self.v, self.given)
+        return np.asarray(first <= self.anchor_day)
 
     @cached_property
     def doubled(self) -> Ints:
@@ -126,3 +132,17 @@ class Baseline:
     def rise_doubled(self) -> Ints:
         """Twice the rise in tenths; 0 where it can't be told."""
         return np.where(self.rise_known, 2 * self.v.iop_tenths.astype(np.int64) - self.doubled, 0)
+
+
+def rows_behind(v: Visits, row: int) -> list[int]:
+    """Return the rows a visit's baseline is made of, in order; empty where there is none."""
+    start = int(v.offsets[v.eye[row]])
+    eye = range(start, row)
+    day, method = int(v.day[row]), int(v.iop_method[row])
+    steroid = [int(v.day[r]) for r in eye if agents.is_steroid(v.text("agents", r))]
+    treated = [int(v.day[r]) for r in eye if int(v.given[r]) == 1]
+    after_steroid = bool(steroid) and steroid[0] < day
+    anchor = steroid[0] if after_steroid else min([*treated[:1], day - 1])
+    same = [r for r in eye if int(v.iop_tenths[r]) != MISSING and int(v.iop_method[r]) == method]
+    in_time = [r for r in same if int(v.day[r]) <= anchor and int(v.day[r]) < day]
+    return in_time[-1:] if after_steroid else in_time[:3]

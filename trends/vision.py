@@ -8,7 +8,7 @@ from functools import cached_property
 
 import numpy as np
 
-from trends.comparable import NONE
+from trends.comparable import NONE, last_before
 from trends.comparisons import Comparisons
 from trends.visits import MISSING, Bools, Ints, Visits
 
@@ -57,9 +57,25 @@ class Loss:
         return np.where((three >= 0).all(axis=0), values, MISSING)
 
     @cached_property
-    def earlier_count(self) -> Ints:
-        """How many numeric acuities stand before each row, comparable or not (up to four)."""
-        given = self.c.letters_given
-        before: Ints = np.cumsum(given) - given
-        start = self.v.offsets[self.v.eye]
-        return before - before[start]
+    def earlier_days(self) -> Ints:
+        """On how many earlier days the eye has a numeric acuity, comparable or not."""
+        eye, day = self.v.eye.astype(np.int64), self.v.day.astype(np.int64)
+        rows = np.flatnonzero(self.c.letters_given)
+        opens = np.ones(rows.size, dtype=bool)
+        opens[1:] = (eye[rows][1:] != eye[rows][:-1]) | (day[rows][1:] != day[rows][:-1])
+        days = rows[opens]
+        span = int(day.max(initial=0)) - int(day.min(initial=0)) + 2
+        keys = eye[days] * span + day[days] - int(day.min(initial=0))
+        here = eye * span + day - int(day.min(initial=0))
+        before = np.searchsorted(keys, here, side="left")
+        return np.asarray(before - np.searchsorted(eye[days], eye, side="left"), dtype=np.int64)
+
+    @cached_property
+    def last_any(self) -> Ints:
+        """The last numeric acuity on an earlier day, comparable or not; NONE without one."""
+        return last_before(self.v, self.v.eye.astype(np.int64), self.c.letters_given)
+
+    def differs(self, codes: Ints) -> Bools:
+        """Whether a code (chart, correction) differs from the last numeric acuity's."""
+        last = self.last_any
+        return np.asarray((last >= 0) & (codes != codes[np.maximum(last, 0)]))

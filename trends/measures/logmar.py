@@ -38,6 +38,11 @@ def e4_of_letters(letters: int) -> int:
     return 17_000 - LETTER_E4 * letters
 
 
+def letters_exact(logmar_e4: int) -> float:
+    """Return ETDRS letters of a logMAR, unrounded; below 0 is off scale."""
+    return 85 - 50 * logmar_e4 / E4
+
+
 def snapped(logmar_e4: int) -> int:
     """Return the nominal line of a printed label; other values unchanged."""
     line = LINE_E4 * half_up(logmar_e4, LINE_E4)

@@ -11,7 +11,7 @@ Raised: 31 mmHg. Not: 24 after 26.
 import numpy as np
 
 from trends import saying
-from trends.baseline import Baseline
+from trends.baseline import Baseline, rows_behind
 from trends.comparisons import Comparisons
 from trends.limits import Table
 from trends.measures.pressure import shown
@@ -52,28 +52,30 @@ def _lower(v: Visits, limits: Table, c: Comparisons, b: Baseline) -> list[Part]:
     last = np.where(b.last_any >= 0, v.iop_tenths[b.last_any], -1)
     higher = v.iop_tenths > last
     followed = b.given & c.followed
-    # Without any earlier reading a rise is no question; earlier ones by another tonometer leave it
-    # open. Same tonometer but none before treatment: there is no baseline to ask for.
-    open_rise = followed & b.any_earlier & (b.rise_known | ~b.same_tonometer)
-    rise, known = b.rise_doubled, b.rise_known
-    lacking = bit("iop_method")
-    one = known & (rise >= 2 * limits.number("rise_twice_tenths"))
+    # No reading early enough for a baseline: a rise is no question. One by another tonometer only:
+    # it stays open. A reading not above the last one raises nothing whatever its rise.
+    asked = followed & b.any_in_time
+    rise, lacking = b.rise_doubled, bit("iop_method")
+    one = b.rise_known & (rise >= 2 * limits.number("rise_twice_tenths"))
     one &= v.iop_tenths > limits.number("over_twice_tenths")
     before = np.maximum(b.last_any, 0)
     both = one & (b.last_any >= 0) & one[before]
-    both_known = known & ((b.last_any < 0) | known[before] | ~one)
+    before_settled = (b.last_any < 0) | b.rise_known[before] | ~b.any_in_time[before]
+    before_settled |= v.iop_tenths[before] <= limits.number("over_twice_tenths")
+    both_known = b.rise_known & (~one | before_settled)
+    both_known |= v.iop_tenths <= limits.number("over_twice_tenths")
 
     def level(name: str, rank: int) -> Part:
         return Part(followed, followed, higher & (v.iop_tenths >= limits.number(name)), rank)
 
     def risen(name: str, rank: int) -> Part:
         met = higher & (rise >= 2 * limits.number(name))
-        return Part(open_rise, known, met, rank, None, lacking)
+        return Part(asked, b.rise_known | ~higher, met, rank, None, lacking)
 
     return [
         level("review_tenths", review),
         risen("rise_review_tenths", review),
-        Part(open_rise, both_known, higher & both, review, None, lacking),
+        Part(asked, both_known | ~higher, higher & both, review, None, lacking),
         level("note_tenths", note),
         risen("rise_note_tenths", note),
     ]
@@ -97,7 +99,7 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     eye, ref, which = saying.eye(v, row), int(judged.ref[row]), int(judged.part[row])
     if int(v.iop_tenths[row]) == MISSING:
         return Description(f"{eye}: no IOP recorded on {saying.day(v, row)}")
-    now = shown(int(v.iop_tenths[row]))
+    now, behind = shown(int(v.iop_tenths[row])), rows_behind(v, row)
     doubled = int(judged.extra["baseline_doubled"][row])
     before = f", {shown(int(v.iop_tenths[ref]))} on {saying.day(v, ref)}" if ref >= 0 else ""
     arithmetic = []
@@ -109,7 +111,7 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     top = which in (0, 1)
     return Description(
         sentence=f"{eye}: IOP {now} mmHg{before}{rise}{saying.treatment_gap(v, row)}",
-        values=saying.values(v, row, ref, "iop_mmhg"),
+        values=saying.baseline_values(v, behind) + saying.values(v, row, ref, "iop_mmhg"),
         arithmetic=arithmetic,
         limit=_limit_words(limits, which),
         noise="two applanation readings by two observers differ by up to 2.6 mmHg (95 %)",
