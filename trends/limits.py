@@ -8,6 +8,7 @@ from functools import cache
 from importlib import resources
 from typing import Any
 
+from trends import words
 from trends.citations import citation
 from trends.errors import LimitSetRefused
 
@@ -87,7 +88,15 @@ class LimitSet:
 
     @classmethod
     def from_toml(cls, text: str) -> "LimitSet":
-        """Read and validate a set; raises ``LimitSetRefused`` with what, value, allowed, why."""
+        """Read and validate a set; raises ``LimitSetRefused`` with what, value, allowed, why.
+
+        Tables and entries are those of the shipped general set; a rule or regimen may be absent
+        (it is off then), an entry for one OCT class may be absent or added (a site choice).
+        """
+        return _checked(cls._read(text))
+
+    @classmethod
+    def _read(cls, text: str) -> "LimitSet":
         text = text.replace("\r\n", "\n").strip() + "\n"
         try:
             data = tomllib.loads(text)
@@ -145,6 +154,53 @@ def _entries(table: str, body: Mapping[str, Any]) -> Iterator[tuple[str, Entry]]
         )
 
 
+RANK_NAMES = ("raise_first", "weigh_today", "keep_in_mind")
+"""The words a rank may be; ``verdict`` numbers them."""
+
+
+@cache
+def _shape() -> LimitSet:
+    """Return the set whose tables and entries every set is checked against."""
+    file = resources.files("trends") / "limit_sets" / "general.toml"
+    return LimitSet._read(file.read_text(encoding="utf-8"))
+
+
+def _checked(found: LimitSet) -> LimitSet:
+    """Return a set whose causes, tables and entries the rules can run with."""
+    for cause in found.causes:
+        if cause not in words.CAUSES:
+            raise _refused("causes", cause, ", ".join(words.CAUSES))
+    for here, known in ((found.rules, _shape().rules), (found.regimens, _shape().regimens)):
+        for name, table in here.items():
+            if name not in known:
+                raise _refused(name, name, ", ".join(known))
+            _check_table(table, known[name])
+    return found
+
+
+def _by_class(name: str) -> str:
+    """Return an entry's name without the OCT class (or "assumed") it is for."""
+    parts = name.split("_")
+    return "_".join("*" if p in (*words.OCT_CLASSES, "assumed") else p for p in parts)
+
+
+def _check_table(table: Table, known: Table) -> None:
+    like = {_by_class(name): entry for name, entry in known.entries.items()}
+    for name, entry in table.entries.items():
+        what, model = f"{table.name}.{name}", like.get(_by_class(name))
+        if model is None:
+            raise _refused(what, name, ", ".join(known.entries))
+        if type(entry.value) is not type(model.value):
+            raise _refused(what, entry.value, f"a value such as {model.value}")
+        if name.startswith("rank") and entry.value not in RANK_NAMES:
+            raise _refused(what, entry.value, ", ".join(RANK_NAMES))
+        if isinstance(entry.value, int) and entry.value < 0:
+            raise _refused(what, entry.value, "0 or more")
+    lacking = [n for n in known.entries if n not in table.entries and "*" not in _by_class(n)]
+    if lacking:
+        raise _refused(f"{table.name}.{lacking[0]}", None, "present")
+
+
 def shipped_names() -> list[str]:
     """Return the names of the shipped sets."""
     folder = resources.files("trends") / "limit_sets"
@@ -164,7 +220,7 @@ def shipped(name: str) -> LimitSet:
 def floor() -> LimitSet:
     """Return the floor: alarms and levels that run always and can't be switched off."""
     file = resources.files("trends") / "floor.toml"
-    return LimitSet.from_toml(file.read_text(encoding="utf-8"))
+    return LimitSet._read(file.read_text(encoding="utf-8"))
 
 
 def table_for(limits: LimitSet | None, rule: str, *, is_floor: bool) -> Table | None:
