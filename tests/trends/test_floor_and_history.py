@@ -89,6 +89,16 @@ def test_a_rule_left_out_of_the_set_is_off() -> None:
     assert "too_soon" not in reviewed.judged and "letters_lost" in reviewed.judged
 
 
+def test_five_letters_raise_nothing_by_thickening_where_the_set_leaves_thickening_out() -> None:
+    usual = {"acuity_notation": "etdrs_letters", "oct_class": "SD-BM"}
+    rows = [
+        {"date": "2026-01-01", "acuity": "70", "cst_um": "300", **usual},
+        {"date": "2026-02-01", "acuity": "65", "cst_um": "340", **usual},
+    ]
+    limits = set_without("thickening")
+    assert found(review(visits_of(rows), limits, TODAY), "letters_lost")[1] == "limit_not_reached"
+
+
 # The fellow eye ----------------------------------------------------------------------------------
 
 

@@ -282,6 +282,21 @@ def test_impossible_thicknesses_are_refused(text: str) -> None:
         thickness.micrometres(text)
 
 
+def test_an_unlikely_thickness_is_worth_a_question() -> None:
+    # The parameters file questions below 120 and above 1100 µm.
+    assert [thickness.is_unlikely(um) for um in (119, 120, 1100, 1101)] == [
+        True,
+        False,
+        False,
+        True,
+    ]
+
+
+def test_an_unknown_chart_is_refused() -> None:
+    with pytest.raises(EbblineError, match="electronic_etdrs"):
+        acuity.parse("decimal", "0.5", "tumbling")
+
+
 def test_millimetres_are_named_as_such() -> None:
     with pytest.raises(EbblineError, match="looks like millimetres"):
         thickness.micrometres("0.412")
