@@ -14,7 +14,7 @@ from trends import carried, words
 from trends.cells import NEEDED, READERS, TIDY_COLUMNS
 from trends.errors import EbblineError, FrameRefused, RefusedCell
 from trends.measures import acuity, agents
-from trends.visits import MISSING, Bools, Ints, Visits, coded, sorted_visits
+from trends.visits import MISSING, Ints, Visits, coded, sorted_visits
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -216,8 +216,3 @@ def _acuity_row(text: str, notation: int, chart: int) -> tuple[int, int, int, in
         SCALES.index(found.scale) if on_chart else words.NOT_RECORDED,
         int(found.five_letters),
     )
-
-
-def mask(values: Any) -> Bools:
-    """Return an array as a mask."""
-    return np.asarray(values, dtype=bool)

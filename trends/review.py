@@ -16,7 +16,7 @@ from trends.limits import LimitSet, floor, table_for
 from trends.regimens import registry as regimens
 from trends.rules import registry
 from trends.ruling import Judged
-from trends.verdict import COULD_NOT_TELL, DOES_NOT_APPLY, NO_RANK, Outcomes
+from trends.verdict import DOES_NOT_APPLY, NO_RANK, Outcomes
 from trends.visits import Bools, Ints, Visits, day_number
 
 SKIP_BACK_DAYS = "max_age_days"
@@ -105,8 +105,3 @@ def review(
         judged[info.id] = _off_cause(found, covered) if on_visits else found
     found_regimens = regimens.judge_all(visits, limits, c, only)
     return Reviewed(visits, limits, today, judged, found_regimens)
-
-
-def could_not_tell(judged: Judged) -> Bools:
-    """Rows a rule could not tell."""
-    return np.asarray(judged.outcome == COULD_NOT_TELL)

@@ -42,8 +42,3 @@ SYMPTOMS = (
 # Ordered: a step down the list of categories is a step of vision; "chart" is every measured line.
 OFF_CHART = ("NLP", "LP", "HM", "CF")
 ON_CHART = len(OFF_CHART)
-
-
-def code(words: tuple[str, ...], word: str) -> int:
-    """Return the number of a word; blank is NOT_RECORDED; raises ``ValueError`` for a stranger."""
-    return words.index(word) if word else NOT_RECORDED
