@@ -11,6 +11,7 @@
   const warn = Number(document.body.dataset.warn) * 1000;
   const headers = { "X-Requested-With": "ebbline" };
   let waiting = [];
+  let putOff = false;
   let last = Date.now();
 
   function token() {
@@ -26,14 +27,16 @@
   }
 
   // Returns the response. When the session has ended it asks for the password here, then sends again.
-  async function send(url, data) {
+  // What runs in the background ("quiet") never asks a second time once signing in was put off.
+  async function send(url, data, quiet) {
     last = Date.now();
     const answer = await post(url, data);
     if (answer.status !== 401 && answer.status !== 403) return answer;
     const said = await answer.clone().json().catch(function () { return {}; });
     if (!said.signed_out && !said.old_page) return answer;
+    if (quiet && putOff) throw new Error("signed out");
     await signedInAgain();
-    return send(url, data);
+    return send(url, data, quiet);
   }
   function signedInAgain() {
     if (!again.open) again.showModal();
@@ -62,9 +65,11 @@
     problem.hidden = fits;
     if (!fits) return;
     last = Date.now();
-    again.close();
     settle("done");
+    putOff = false;
+    again.close();
   });
+  again.addEventListener("cancel", function () { putOff = true; });
   again.addEventListener("close", function () { settle("fail"); });
 
   ["keydown", "pointerdown"].forEach(function (name) {

@@ -25,24 +25,32 @@
   async function keep(form) {
     timers.delete(form);
     try {
-      const answer = await window.ebbline.send(here.dataset.draft, draft(form));
+      const answer = await window.ebbline.send(here.dataset.draft, draft(form), true);
       sheet.state(form, answer.ok ? "Kept as a draft, not stored as a record." : "The draft could not be kept. Save the part, or keep this page open.");
+      return "";
     } catch (error) {
-      sheet.state(form, "The draft could not be kept: no answer from the server. Keep this page open.");
+      const out = error.message === "signed out";
+      sheet.state(form, out ? "Not kept: you are signed out. What you typed is still here." : "The draft could not be kept: no answer from the server. Keep this page open.");
+      return error.message;
     }
+  }
+  function begin(form) {
+    const mine = keep(form).finally(function () { if (underway.get(form) === mine) underway.delete(form); });
+    underway.set(form, mine);
   }
   document.addEventListener("input", function (event) {
     const form = event.target.closest("form.part-form");
     if (!form) return;
     form.dataset.typed = "yes";
     clearTimeout(timers.get(form));
-    timers.set(form, setTimeout(function () { underway.set(form, keep(form)); }, wait));
+    timers.set(form, setTimeout(function () { begin(form); }, wait));
   });
   // A draft still on its way must not arrive after the save that makes it needless.
   sheet.settleDrafts = async function (form) {
     clearTimeout(timers.get(form));
     timers.delete(form);
-    await underway.get(form);
+    // Whoever just put off signing in isn't asked a second time for the same click.
+    if (await underway.get(form) === "signed out") throw new Error("signed out");
   };
   // Before another page takes this one's place: keep what was typed a moment ago.
   sheet.keepAll = async function () {

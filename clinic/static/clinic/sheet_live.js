@@ -36,7 +36,7 @@
     number += 1;
     data.set("number", String(number));
     try {
-      const answer = await window.ebbline.send(here.dataset.compare, data);
+      const answer = await window.ebbline.send(here.dataset.compare, data, true);
       if (answer.ok) show(form, await answer.json());
     } catch (error) { /* The next field left asks again. */ }
   }
