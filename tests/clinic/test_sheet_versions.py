@@ -80,6 +80,17 @@ def test_replacing_their_value_asks_for_a_reason(desk: Desk, patient: Patient) -
     assert (row.iop_tenths, row.iop_method, row.change) == (170, "applanation", "correction")
 
 
+def test_a_reading_both_typed_alike_keeps_its_tonometer(desk: Desk, patient: Patient) -> None:
+    mine = signed_in(desk.clinician)
+    form = opened(mine, patient)
+    desk.save(patient, "measured", TODAY, R={"iop_tenths": 170, "iop_method": "rebound"})
+    conflict = send(mine, form, R_iop="17", R_lens="clear")
+    assert send(mine, form_to(conflict, "/measured/")).status_code == 302
+    row = newest()
+    assert (row.iop_tenths, row.iop_method, row.lens) == (170, "rebound", "clear")
+    assert row.change == "addition"
+
+
 def test_the_values_of_one_acuity_are_never_mixed(desk: Desk, patient: Patient) -> None:
     mine = signed_in(desk.clinician)
     form = opened(mine, patient)

@@ -68,6 +68,13 @@
       delete form.dataset.busy;
     }
   }
+  // A refusal speaks of the value that was sent; once that changes it would only mislead.
+  document.addEventListener("input", function (event) {
+    const refusal = event.target.id && document.getElementById(event.target.id + "_error");
+    if (!refusal) return;
+    refusal.remove();
+    event.target.removeAttribute("aria-invalid");
+  });
   document.addEventListener("submit", function (event) {
     const form = event.target.closest("form.part-form");
     if (!form) return;
