@@ -119,7 +119,7 @@ def test_the_chart_has_a_role_a_text_and_the_same_numbers_in_a_table(
     person: Person, reader: Client
 ) -> None:
     html = page(reader, person)
-    label = re.search(r'id="eye-chart" role="img" aria-label="([^"]+)"', html)
+    label = re.search(r'id="eye-chart" role="figure" aria-label="([^"]+)"', html)
     assert label
     assert "Right eye, CST: 3 readings from 400" in label[1]
     table = html[html.index("Numbers of the chart by date") :]
