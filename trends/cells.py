@@ -72,9 +72,7 @@ def _checked_agent(text: str) -> int:
 
 
 def _symptom_bits(text: str) -> int:
-    found = symptoms.parse(text)
-    if found is None:
-        return 0
+    found = symptoms.parse(text) or symptoms.Symptoms((), ())
     return found.present_bits | found.gone_bits << len(words.SYMPTOMS)
 
 

@@ -64,13 +64,15 @@ def judge(v: Visits, c: Comparisons, limits: Table, limit: Ints) -> Judged:
     not_told = cannot & (crossed < 0) & (untold == here)
     since = np.where(crossed >= 0, crossed, np.where(cannot, untold, -1))
     still = above & (since >= 0) & ~raised & ~not_told
-    known = scanned & diabetic & ~not_told & ~(c.poor & ~above)
+    # A poor scan can raise or keep the state; it can't show that the limit was not reached.
+    unsure = scanned & c.poor & ~raised & ~still
+    known = scanned & diabetic & ~not_told & ~unsure
     missing = np.where(~c.cst_given, bit("cst_um"), 0)
     no_class = c.cst_given & ~scanned
     incomparable = not_told & (low.not_comparable | no_um)
     missing |= np.where(no_class | incomparable, bit("oct_class"), 0)
     missing |= np.where(v.cause < 0, bit("cause"), 0)
-    missing |= np.where(scanned & c.poor & ~above, bit("scan_quality"), 0)
+    missing |= np.where(unsure, bit("scan_quality"), 0)
     return judged_one(
         known=known,
         applies=applies,

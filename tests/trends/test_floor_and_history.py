@@ -9,6 +9,7 @@ import pytest
 
 from trends.limits import LimitSet, shipped
 from trends.review import Reviewed, review
+from trends.ruling import columns_of
 from trends.verdict import OUTCOME_WORDS, RANK_WORDS
 from trends.visits import Visits
 from trends.wording import fellow_rows, rule_rows
@@ -70,7 +71,9 @@ def test_without_a_set_only_the_floors_own_parts_run() -> None:
     reviewed = review(visits_of(rows), None, TODAY)
     assert found(reviewed, "pressure")[0] == "limit_not_reached"
     assert found(reviewed, "alarm_symptoms")[0] == "limit_not_reached"
-    assert found(reviewed, "pressure_after")[1] == "limit_not_reached"
+    # Only perception is the floor's: with no symptoms asked, a pressure can't tell it.
+    assert found(reviewed, "pressure_after")[1] == "could_not_tell"
+    assert columns_of(int(reviewed.missing["pressure_after"][1])) == ("symptoms",)
 
 
 def test_a_set_can_move_neither_the_level_nor_the_rank_of_the_floor() -> None:

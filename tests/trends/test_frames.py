@@ -1,6 +1,7 @@
 """A table of visits is taken in as given: typed cells, blanks, doses, one assumed scanner."""
 
 import datetime as dt
+from dataclasses import replace
 
 import numpy as np
 import pandas as pd
@@ -98,3 +99,28 @@ def test_an_alarm_on_one_eye_gives_the_fellow_treated_that_day_its_own_row() -> 
         ("L", "2026-05-05", "raise_first"),
     ]
     assert alarms[1].sentence.startswith("Left eye:")
+
+
+def test_a_year_of_birth_is_taken() -> None:
+    row = {"person": "a", "eye": "R", "date": "2026-01-01", "birth_year": "1958"}
+    assert Visits.from_frame(pd.DataFrame([row])).birth_year.tolist() == [1958]
+
+
+def test_a_column_that_does_not_exist_is_named() -> None:
+    v = Visits.from_frame(pd.DataFrame([{"person": "a", "eye": "R", "date": "2026-01-01"}]))
+    with pytest.raises(AttributeError, match="cst_mm"):
+        v.cst_mm  # noqa: B018
+    empty = replace(v, day=v.day[:0], person=v.person[:0], offsets=np.array([0]))
+    assert not list(empty.by_persons(10))
+
+
+def test_an_event_between_two_scans_is_named_as_what_keeps_them_apart() -> None:
+    rows = [
+        {"person": "a", "eye": "R", "date": day, "cst_um": cst, "oct_class": "SD-BM"}
+        for day, cst in (("2026-01-01", "400"), ("2026-02-01", "440"))
+    ]
+    v = Visits.from_frame(pd.DataFrame(rows))
+    v = replace(v, columns={**v.columns, "breaks": np.array([0, 1], dtype=np.int32)})
+    one = list(rule_rows(review(v, shipped("general"), TODAY), "thickening", [1]))[0]
+    assert one.outcome == "could_not_tell" and one.working is not None
+    assert "an eye event lies between this scan and earlier ones" in one.working["unknowns"]

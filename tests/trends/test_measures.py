@@ -44,6 +44,8 @@ def test_every_label_of_a_standard_line_snaps_to_its_line(line: dict[str, Any]) 
     # The label's own size, before snapping, to the four digits printed.
     exact = logmar.e4_of(20 / float(feet.removeprefix("20/")))
     assert exact == round(float(line["exact"]) * 10_000)
+    # The letters of that size as printed; half of the last digit, plus half of the logMAR's.
+    assert abs(logmar.letters_exact(exact) - float(line["letters_exact"])) <= 0.0075
 
 
 @pytest.mark.parametrize("text", ["20/15", "20/30", "20/60", "20/70", "20/150", "20/300"])
@@ -69,6 +71,18 @@ def test_averages_are_taken_in_logmar(row: dict[str, Any]) -> None:
     mean = logmar.mean_e4(values)
     assert abs(mean / 10_000 - float(row["logmar"])) <= 0.005
     assert abs(logmar.denominator_20(mean) - row["feet"]) <= 0.5
+
+
+def test_the_mean_of_pair_54_is_printed_unsnapped() -> None:
+    # -log10(1) = 0 and -log10(20/40) = 0.3010: mean 0.1505, 20 x 10^0.1505 = 28.28 feet.
+    mean = logmar.mean_e4([logmar.e4_of(20 / 20), logmar.e4_of(20 / 40)])
+    assert mean == 1505
+    assert round(logmar.denominator_20(mean), 2) == 28.28
+
+
+@pytest.mark.parametrize("row", ACUITY["nearest"], ids=lambda r: str(r["number"]))
+def test_letters_show_the_nearest_line_as_printed(row: dict[str, Any]) -> None:
+    assert logmar.nearest_line(logmar.e4_of_letters(row["letters"])) == row["line"]
 
 
 @pytest.mark.parametrize("row", ACUITY["chart_test"], ids=lambda r: str(r["number"]))
@@ -311,7 +325,14 @@ def test_symptoms_are_present_unless_said_gone() -> None:
     assert symptoms.parse(" ") is None
 
 
-@pytest.mark.parametrize("text", ["itch", "none+pain", "pain:later", "none:gone"])
+def test_a_symptom_named_twice_counts_once_and_as_itself() -> None:
+    found = symptoms.parse("no_perception+no_perception+pain:gone+pain:gone")
+    assert found and found.present == ("no_perception",) and found.gone == ("pain",)
+    assert symptoms.names(found.present_bits) == ("no_perception",)
+    assert symptoms.names(found.gone_bits) == ("pain",)
+
+
+@pytest.mark.parametrize("text", ["itch", "none+pain", "pain:later", "none:gone", "+", " + "])
 def test_an_unknown_symptom_is_refused(text: str) -> None:
     with pytest.raises(EbblineError, match="light_sensitivity"):
         symptoms.parse(text)

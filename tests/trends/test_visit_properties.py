@@ -11,6 +11,7 @@ from hypothesis import strategies as st
 from trends.limits import shipped
 from trends.review import review
 from trends.rules import registry
+from trends.verdict import LIMIT_NOT_REACHED
 from trends.visits import Visits
 from trends.wording import VerdictRow, verdict_rows
 
@@ -135,6 +136,52 @@ def test_every_visit_has_one_outcome_a_rule_and_missing_is_never_called_normal(
         if not row["cst_um"]:
             allowed = {"could_not_tell", "does_not_apply"}
             assert rule not in {"thickening", "crossed_limit"} or outcome in allowed
+
+
+# The cells without which each rule can't know that its limit was not reached.
+DECIDING = {
+    "thickening": ["cst_um"],
+    "thickening_possible": ["cst_um"],
+    "crossed_limit": ["cst_um"],
+    "crossed_limit_possible": ["cst_um"],
+    "fluid_back": ["irf", "srf"],
+    "letters_lost": ["acuity"],
+    "off_chart_step": ["acuity"],
+    "pressure": ["iop_mmhg"],
+    "pressure_after": ["iop_after_mmhg", "symptoms"],
+    "alarm_symptoms": ["symptoms"],
+    "too_soon": ["agent"],
+    "scanner_changed": ["cst_um"],
+    "acuity_method_changed": ["acuity"],
+    "poor_scan": ["cst_um", "scan_quality"],
+}
+
+
+@settings(max_examples=20, deadline=None)
+@given(HISTORIES, SEXES, CAUSES, st.sampled_from(["", None, float("nan"), " "]))
+def test_a_blank_measurement_never_shows_a_limit_not_reached(
+    history: list[dict[str, Any]], sex: str, cause: str, blank: Any
+) -> None:
+    assert list(DECIDING) == VISIT_RULES
+    rows = rows_of(history, "A", sex=sex, cause=cause)
+    for rule, columns in DECIDING.items():
+        emptied = [*rows[:-1], {**rows[-1], **dict.fromkeys(columns, blank)}]
+        v = Visits.from_frame(pd.DataFrame(emptied))
+        found = review(v, shipped("general"), AS_OF, only=[rule])
+        assert found.outcome[rule][-1] != LIMIT_NOT_REACHED, rule
+
+
+@settings(max_examples=12, deadline=None)
+@given(HISTORIES, HISTORIES)
+def test_one_eye_alone_reads_the_same_as_beside_its_fellow(
+    right: list[dict[str, Any]], left: list[dict[str, Any]]
+) -> None:
+    rows = [*rows_of(right, "A", "R"), *rows_of(left, "A", "L")]
+    both = said(rows)
+    alone = said([row for row in rows if row["eye"] == "R"])
+    # An alarm of one eye speaks for the fellow treated the same day; nothing else crosses over.
+    own = {key: one for key, one in alone.items() if key[3] != "alarm_symptoms"}
+    assert own == {key: both[key] for key in own}
 
 
 @settings(max_examples=25, deadline=None)

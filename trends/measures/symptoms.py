@@ -36,23 +36,32 @@ def names(bits: int) -> tuple[str, ...]:
     return tuple(one for place, one in enumerate(words.SYMPTOMS) if int(bits) >> place & 1)
 
 
+def _refused(text: str) -> SymptomsRefused:
+    return SymptomsRefused(
+        "symptoms",
+        text,
+        ", ".join((*words.SYMPTOMS, NONE)) + f"; joined by +; {GONE} when passed",
+        "'none' stands alone.",
+        "Use the words of the list.",
+    )
+
+
 def parse(text: str) -> Symptoms | None:
-    """Read a cell; None when blank (not asked). Raises ``SymptomsRefused``."""
-    tokens = [token.strip() for token in text.lower().split("+") if token.strip()]
-    if not tokens:
+    """Read a cell; None when blank (not asked). Raises ``SymptomsRefused``.
+
+    A symptom named twice counts once. Only joins, without a word, are no answer and are refused.
+    """
+    if not text.strip():
         return None
+    tokens = list(dict.fromkeys(one.strip() for one in text.lower().split("+") if one.strip()))
+    if not tokens:
+        raise _refused(text)
     present: list[str] = []
     gone: list[str] = []
     for token in tokens:
         name = token.removesuffix(GONE)
         if name not in (*words.SYMPTOMS, NONE) or (name == NONE and tokens != [NONE]):
-            raise SymptomsRefused(
-                "symptoms",
-                text,
-                ", ".join((*words.SYMPTOMS, NONE)) + f"; joined by +; {GONE} when passed",
-                "'none' stands alone.",
-                "Use the words of the list.",
-            )
+            raise _refused(text)
         if name != NONE:
             (gone if token.endswith(GONE) else present).append(name)
     return Symptoms(tuple(present), tuple(gone))

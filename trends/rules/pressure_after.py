@@ -40,9 +40,11 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     lost = (v.symptoms_present & NO_PERCEPTION) > 0
     evidence = measured | lost
     applies = ~v.is_contact & (v.given != 0)
-    recorded = measured | asked
+    # The floor alone judges perception only: a pressure says nothing of it.
+    recorded = asked if limits.floor_only else measured | asked
+    after = bit("symptoms" if limits.floor_only else "iop_after_mmhg")
     treated = (v.given == 1) | evidence
-    lacking = np.where(v.given < 0, bit("agent"), bit("iop_after_mmhg"))
+    lacking = np.where(v.given < 0, bit("agent"), after)
     known = treated & recorded
     parts = [Part(applies, known, lost, RANKS["raise_first"], None, lacking)]
     if not limits.floor_only:

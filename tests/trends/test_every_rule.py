@@ -1,0 +1,154 @@
+"""What holds for every rule: its sources, its nine parts, and the kinds and statuses it runs on."""
+
+import datetime as dt
+
+import pandas as pd
+import pytest
+
+from trends.citations import citations
+from trends.limits import shipped
+from trends.regimens import registry as regimens
+from trends.review import review
+from trends.rules import registry
+from trends.visits import Visits
+from trends.wording import VerdictRow, rule_rows
+
+AS_OF = dt.date(2027, 1, 1)
+RULES = registry.by_id()
+VISIT_RULES = [module.INFO.id for module in registry.VISIT_RULES]
+SCAN = {"oct_class": "SD-BM", "cause": "diabetic", "scanner": "one"}
+LETTERS = {"acuity_notation": "etdrs_letters", "acuity_chart": "etdrs"}
+# For each rule the cells of a first and a second visit; the second is raised.
+RAISED: dict[str, tuple[dict[str, str], dict[str, str]]] = {
+    "thickening": ({"cst_um": "300", **SCAN}, {"cst_um": "330", **SCAN}),
+    "thickening_possible": ({"cst_um": "400", **SCAN}, {"cst_um": "430", **SCAN}),
+    "crossed_limit": (
+        {"cst_um": "280", "sex": "f", **SCAN},
+        {"cst_um": "305", "sex": "f", **SCAN},
+    ),
+    "crossed_limit_possible": ({"cst_um": "280", **SCAN}, {"cst_um": "305", **SCAN}),
+    "fluid_back": ({"srf": "no"}, {"srf": "yes"}),
+    "letters_lost": ({"acuity": "70", **LETTERS}, {"acuity": "60", **LETTERS}),
+    "off_chart_step": (
+        {"acuity": "20", **LETTERS},
+        {"acuity": "CF", "acuity_notation": "off_chart"},
+    ),
+    "pressure": ({"iop_mmhg": "14"}, {"iop_mmhg": "30"}),
+    "pressure_after": ({}, {"agent": "aflibercept", "iop_after_mmhg": "30"}),
+    "alarm_symptoms": ({}, {"symptoms": "pain"}),
+    "too_soon": ({"agent": "aflibercept"}, {"agent": "aflibercept"}),
+    "scanner_changed": ({"cst_um": "300", **SCAN}, {"cst_um": "300", **SCAN, "scanner": "two"}),
+    "acuity_method_changed": (
+        {"acuity": "70", **LETTERS},
+        {"acuity": "70", **LETTERS, "acuity_chart": "electronic_etdrs"},
+    ),
+    "poor_scan": ({"cst_um": "300"}, {"cst_um": "300", "scan_quality": "poor"}),
+    # Nothing after the second visit until the day asked: due, late, away, without a next plan.
+    "did_not_come": ({}, {"due_date": "2026-03-01", "agent": "none"}),
+    "late": ({}, {"due_date": "2026-03-01", "agent": "none"}),
+    "break_off": ({}, {"due_date": "2026-03-01", "agent": "none"}),
+    "away": ({}, {"due_date": "2026-03-01", "agent": "none"}),
+    "no_plan": ({}, {"agent": "none"}),
+    "undecided": ({}, {"cst_um": "300"}),
+}
+# Raised ones that show the clinic's own emergency text in place of options.
+EMERGENCIES = {"off_chart_step", "pressure", "alarm_symptoms"}
+STOPPED = ["stopped", "care_elsewhere", "not_followed"]
+# "All but floor rules, alarm_symptoms, pressure_after and too_soon don't apply" to those.
+ALWAYS = {"off_chart_step", "pressure", "alarm_symptoms", "pressure_after", "too_soon"}
+
+
+def second_visit(rule: str, **also: str) -> VerdictRow:
+    first, second = RAISED[rule]
+    rows = [{"date": "2026-01-01", **first}, {"date": "2026-01-20", **second, **also}]
+    usual = {"person": "p", "eye": "R"}
+    visits = Visits.from_frame(pd.DataFrame([{**usual, **row} for row in rows]).fillna(""))
+    reviewed = review(visits, shipped("general"), AS_OF)
+    place = 1 if rule in VISIT_RULES else 0
+    return next(rule_rows(reviewed, rule, [place], all_working=True))
+
+
+def test_every_rule_has_an_example_and_known_sources() -> None:
+    assert list(RAISED) == list(RULES)
+    for module in (*RULES.values(), *regimens.by_id().values()):
+        assert module.INFO.cites, module.INFO.id
+        assert set(module.INFO.cites) <= set(citations()), module.INFO.id
+
+
+@pytest.mark.parametrize("rule", RAISED)
+def test_a_raised_row_of_each_rule_shows_its_nine_parts(rule: str) -> None:
+    one = second_visit(rule)
+    assert one.outcome == "raised" and one.rank and one.working
+    found = one.working
+    assert found["fact"] == one.sentence and one.sentence.startswith("Right eye")
+    assert found["values"] and all(value["date"] and value["what"] for value in found["values"])
+    assert found["rule"]["id"] == rule and found["rule"]["limit"]
+    assert (found["rule"]["limit_set"], found["rule"]["limit_set_version"]) == ("general", "1")
+    assert found["source"] and all(source["text"] for source in found["source"])
+    assert found["noise"] and found["not_for"]
+    # A follow-up rule compares dates; a visit rule says what it had to assume of the visit.
+    assert bool(found["assumed"]) is (rule in VISIT_RULES)
+    assert isinstance(found["arithmetic"], list) and isinstance(found["unknowns"], list)
+    assert found["emergency"] is (rule in EMERGENCIES)
+    assert not found["options"] if rule in EMERGENCIES else len(found["options"]) >= 2
+
+
+@pytest.mark.parametrize("status", STOPPED)
+@pytest.mark.parametrize("rule", VISIT_RULES)
+def test_an_eye_not_followed_keeps_what_always_runs(rule: str, status: str) -> None:
+    outcome = second_visit(rule, status=status).outcome
+    assert outcome == ("raised" if rule in ALWAYS else "does_not_apply")
+
+
+@pytest.mark.parametrize("status", ["", "in_treatment", "watched", "paused"])
+@pytest.mark.parametrize("rule", VISIT_RULES)
+def test_an_eye_in_care_is_judged_by_every_rule(rule: str, status: str) -> None:
+    assert second_visit(rule, status=status).outcome == "raised"
+
+
+BLANK = {name: "" for _first, second in RAISED.values() for name in second}
+NEEDED = ["", "planned", "check_only", "virtual", "unscheduled", "after_surgery"]
+
+
+def blank_visit(rule: str, kind: str) -> VerdictRow:
+    # Sex and cause belong to the person and the eye: left out, they stay as first entered.
+    blank = {name: "" for name in BLANK if name not in {"sex", "cause"}}
+    return second_visit(rule, **blank, kind=kind)
+
+
+@pytest.mark.parametrize("kind", NEEDED)
+@pytest.mark.parametrize("rule", [one for one in VISIT_RULES if one != "poor_scan"])
+def test_a_blank_measurement_cannot_be_told(rule: str, kind: str) -> None:
+    assert blank_visit(rule, kind).outcome == "could_not_tell"
+
+
+@pytest.mark.parametrize("kind", NEEDED)
+def test_a_scan_absent_in_an_eye_scanned_before_is_raised(kind: str) -> None:
+    assert blank_visit("poor_scan", kind).outcome == "raised"
+
+
+# A treatment not recorded at a visit for treatment can't be told; nothing is measured there.
+TREATING = {"too_soon", "pressure_after"}
+
+
+@pytest.mark.parametrize("rule", VISIT_RULES)
+def test_a_visit_without_measuring_needs_none(rule: str) -> None:
+    assert blank_visit(rule, "contact").outcome == "does_not_apply"
+    wanted = "could_not_tell" if rule in TREATING else "does_not_apply"
+    assert blank_visit(rule, "treatment_only").outcome == wanted
+
+
+@pytest.mark.parametrize(
+    "rule,date,value",
+    [
+        ("thickening", "2026-01-01", 300),
+        ("crossed_limit", "2026-01-01", 280),
+        ("fluid_back", "2026-01-01", "no"),
+        ("letters_lost", "2026-01-01", "70 letters"),
+        ("pressure", "2026-01-01", "14"),
+        ("too_soon", "2026-01-01", "aflibercept"),
+    ],
+)
+def test_the_reference_is_the_earlier_visit(rule: str, date: str, value: object) -> None:
+    found = second_visit(rule).working
+    assert found and (found["reference_date"], found["reference_value"]) == (date, value)
