@@ -8,7 +8,7 @@ from functools import cache
 from importlib import resources
 from typing import Any
 
-from trends import words
+from trends import limit_texts, words
 from trends.citations import citation
 from trends.errors import LimitSetRefused
 
@@ -212,8 +212,15 @@ def shipped(name: str) -> LimitSet:
     """Return a shipped set by name; raises ``LimitSetRefused`` for an unknown one."""
     if name not in shipped_names():
         raise _refused("name", name, ", ".join(shipped_names()))
+    return LimitSet.from_toml(_shipped_text(name))
+
+
+def _shipped_text(name: str) -> str:
+    """Return the whole text of a shipped set, also of one that builds on another."""
     file = resources.files("trends") / "limit_sets" / f"{name}.toml"
-    return LimitSet.from_toml(file.read_text(encoding="utf-8"))
+    text = file.read_text(encoding="utf-8")
+    base = limit_texts.base_of(text)
+    return text if base is None else limit_texts.whole(text, _shipped_text(base))
 
 
 @cache

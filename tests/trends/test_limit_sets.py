@@ -1,7 +1,10 @@
 """A limit set that rules couldn't run with, or whose numbers nobody can check, is refused."""
 
+import tomllib
+
 import pytest
 
+from trends import limit_texts
 from trends.errors import LimitSetRefused
 from trends.limits import RANK_NAMES, LimitSet, floor, shipped, shipped_names
 from trends.verdict import RANKS
@@ -79,3 +82,27 @@ def test_line_ends_of_another_system_give_the_same_digest() -> None:
 def test_ranks_of_a_set_are_the_ranks_of_a_verdict() -> None:
     assert set(RANK_NAMES) == set(RANKS)
     assert floor().name == "floor"
+
+
+def test_a_set_that_builds_on_another_is_stored_whole() -> None:
+    general = shipped("general")
+    for name in set(shipped_names()) - {"general"}:
+        own = shipped(name)
+        assert "builds_on" not in own.text and own.name == name
+        assert set(own.rules) >= set(general.rules)
+        assert own.regimens and set(own.regimens) <= set(general.regimens)
+
+
+def test_what_a_form_states_wins_and_what_it_leaves_out_is_the_base_s() -> None:
+    early, late = shipped("protocol_i"), shipped("protocol_t")
+    first, second = (one.regimens["as_needed_stability"] for one in (early, late))
+    # Protocol I gives four doses and asks for letters or thickness; protocol T six, and for both.
+    assert (first["loading"], first["success_joined_by"]) == (4, "or")
+    assert (second["loading"], second["success_joined_by"]) == (6, "and")
+    assert first["letters"] == second["letters"] == 5
+
+
+def test_written_out_and_read_again_a_set_has_the_same_entries() -> None:
+    general = shipped("general")
+    again = LimitSet.from_toml(limit_texts.render(tomllib.loads(general.text)))
+    assert list(again.entries()) == list(general.entries()) and again.causes == general.causes
