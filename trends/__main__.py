@@ -51,7 +51,17 @@ def parser() -> argparse.ArgumentParser:
     one.add_argument(
         "--all-working", action="store_true", help="write the working of every outcome"
     )
-    one.add_argument("--summary", action="store_true", help="print the shares of visits raised")
+    one.add_argument(
+        "--one-scanner-per-eye",
+        action="store_true",
+        help="compare scans without a class within the eye; each working says it was assumed",
+    )
+    one.add_argument(
+        "--summary",
+        action="store_true",
+        help="print the shares of visits raised by rank and rule, per 30-eye day, and how many "
+        "raises of thickness and letters were back within noise at the next visit",
+    )
     sets = commands.add_parser("limit-sets", help="list the shipped limit sets with sources")
     sets.add_argument("--brief", action="store_true", help="names and versions only")
     return top
@@ -76,7 +86,9 @@ def run_review(options: argparse.Namespace) -> int:
         return REFUSED
     try:
         chosen = limits.shipped(options.limit_set)
-        visits = tidy.read(options.visits, options.as_of)
+        visits = tidy.read(
+            options.visits, options.as_of, one_scanner_assumed=options.one_scanner_per_eye
+        )
     except FrameRefused as refused:
         for cell in refused.cells[:SHOWN_CELLS]:
             print(cell, file=sys.stderr)

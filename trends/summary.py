@@ -6,9 +6,11 @@ import numpy as np
 
 from trends.review import Reviewed
 from trends.rules import registry
-from trends.verdict import RAISE_FIRST, RAISED, WEIGH_TODAY
+from trends.settling import settled
+from trends.verdict import KEEP_IN_MIND, RAISE_FIRST, RAISED, RANK_WORDS, WEIGH_TODAY
 
 DAY_OF_EYES = 30
+RANKS_DOWN = (RAISE_FIRST, WEIGH_TODAY, KEEP_IN_MIND)
 
 
 @dataclass(frozen=True)
@@ -60,11 +62,25 @@ def by_rule(reviewed: Reviewed) -> dict[str, Share]:
     }
 
 
+def by_rule_and_rank(reviewed: Reviewed) -> dict[str, dict[str, int]]:
+    """Return for each rule how many visits it raises at each rank, highest first."""
+    found: dict[str, dict[str, int]] = {}
+    for rule in visit_rules(reviewed):
+        judged = reviewed.judged[rule]
+        raised = judged.rank[judged.outcome == RAISED]
+        counts = {RANK_WORDS[rank]: int((raised == rank).sum()) for rank in RANKS_DOWN}
+        found[rule] = {word: count for word, count in counts.items() if count}
+    return found
+
+
 def text(reviewed: Reviewed) -> str:
     """Return the summary as lines of text."""
     lines = [f"{len(reviewed.visits)} visits of {reviewed.visits.offsets.size - 1} eyes"]
+    ranks = by_rule_and_rank(reviewed)
     for name, share in (*by_rank(reviewed).items(), *by_rule(reviewed).items()):
+        parts = ", ".join(f"{word} {count}" for word, count in ranks.get(name, {}).items())
         lines.append(
             f"{name:<24} {share.count:>8} {share.percent:>6.1f} %  {share.a_day:>5.1f} a 30-eye day"
+            f"{'  ' + parts if parts else ''}"
         )
-    return "\n".join(lines)
+    return "\n".join([*lines, *(one.line() for one in settled(reviewed))])

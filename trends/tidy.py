@@ -31,8 +31,12 @@ COLUMNS = (
 FORMULA_STARTS = ("=", "+", "-", "@", "\t", "\r")
 
 
-def read(path: Path, as_of: dt.date) -> Visits:
-    """Read VISITS.csv; raises ``FrameRefused`` for cells it can't take and rows after ``as_of``."""
+def read(path: Path, as_of: dt.date, *, one_scanner_assumed: bool = False) -> Visits:
+    """Read VISITS.csv; raises ``FrameRefused`` for cells it can't take and rows after ``as_of``.
+
+    ``one_scanner_assumed``: scans without a class are compared within the eye, and each working
+    says so.
+    """
     import pandas as pd
 
     try:
@@ -50,7 +54,7 @@ def read(path: Path, as_of: dt.date) -> Visits:
     ) as error:
         cell = RefusedCell(0, "(file)", path.name, "a UTF-8 CSV file with a header", str(error))
         raise FrameRefused([cell]) from error
-    visits = Visits.from_frame(frame)
+    visits = Visits.from_frame(frame, one_scanner_assumed=one_scanner_assumed)
     late = np.flatnonzero(visits.day > day_number(as_of))
     if late.size:
         raise FrameRefused(

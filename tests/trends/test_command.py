@@ -231,3 +231,17 @@ def test_every_number_has_a_source_and_a_unit() -> None:
     for limit_set in (*map(limits.shipped, limits.shipped_names()), limits.floor()):
         for table, name, entry in limit_set.entries():
             assert entry.cite in citations() and entry.unit, f"{table}.{name}"
+
+
+def test_scans_without_a_class_are_compared_only_when_that_was_declared(tmp_path: Path) -> None:
+    rows = [
+        {"person": "a", "eye": "R", "date": f"2026-0{month}-01", "cst_um": cst}
+        for month, cst in ((1, "400"), (2, "440"))
+    ]
+    run(tmp_path, rows)
+    last = [row for row in verdicts(tmp_path) if row["rule"] == "thickening"][-1]
+    assert (last["outcome"], last["missing"]) == ("could_not_tell", "oct_class")
+    run(tmp_path, rows, "--one-scanner-per-eye")
+    last = [row for row in verdicts(tmp_path) if row["rule"] == "thickening"][-1]
+    assert last["outcome"] == "raised"
+    assert "one scanner per eye, assumed at intake" in json.loads(last["working"])["assumed"]
