@@ -202,9 +202,10 @@ def _check_table(table: Table, known: Table) -> None:
 
 
 def shipped_names() -> list[str]:
-    """Return the names of the shipped sets."""
+    """Return the names of the shipped sets, the cautious general one first."""
     folder = resources.files("trends") / "limit_sets"
-    return sorted(f.name.removesuffix(".toml") for f in folder.iterdir() if f.name[-5:] == ".toml")
+    names = (f.name.removesuffix(".toml") for f in folder.iterdir() if f.name[-5:] == ".toml")
+    return sorted(names, key=lambda name: (name != "general", name))
 
 
 @cache
