@@ -54,18 +54,6 @@ class AsNeeded:
     all_pairs: Bools
     withholding_start_reference: Bools
 
-    def at(self, p: Ints) -> "AsNeeded":
-        """Return the parameters at the given positions."""
-        return AsNeeded(
-            pick(self.loading, p),
-            self.change.at(p),
-            pick(self.success_until_day, p),
-            pick(self.doubling_from_day, p),
-            pick(self.doubling_visits, p),
-            pick(self.all_pairs, p),
-            pick(self.withholding_start_reference, p),
-        )
-
 
 @dataclass(frozen=True)
 class Before:
@@ -81,20 +69,19 @@ class Before:
 
 
 class Walk:
-    """State of one sweep and its trail: ``trail[name]`` (m,) is the state before each visit."""
+    """State of one sweep and its trail: ``trail[name]`` (m,) is the state before each visit.
 
-    STATE = {
-        "injections": np.int32,
+    What depends on dates and treatments alone is worked out for all positions at once; the sweep
+    carries only what depends on the readings themselves: withholding, what was compared since, and
+    the run of withheld visits.
+    """
+
+    CARRIED = {
         "since": np.int32,
-        "last": np.int64,
-        "last_but_one": np.int64,
         "held": np.bool_,
         "held_from": np.int64,
         "held_last": np.int64,
         "run": np.int32,
-        "first_day": np.int64,
-        "blank": np.int8,
-        "history_unknown": np.bool_,
     }
 
     def __init__(
@@ -102,16 +89,20 @@ class Walk:
     ) -> None:
         self._r, self._given, self._params = r, given, params
         first, _ = course_order(courses)
-        self._state: State = {name: np.zeros(first.size, kind) for name, kind in self.STATE.items()}
-        for name in ("last", "last_but_one", "held_from", "held_last"):
-            self._state[name][:] = NONE
-        self._state["injections"][:] = before.injections[first]
-        self._state["since"][:] = np.minimum(before.injections[first], RECORDED_AFTER_BLANK)
-        self._state["first_day"][:] = before.first_day[first]
-        self._state["history_unknown"][:] = before.unknown[first]
-        self.trail: State = {
-            name: np.zeros(courses.rows.size, kind) for name, kind in self.STATE.items()
+        self._state: State = {
+            name: np.zeros(first.size, kind) for name, kind in self.CARRIED.items()
         }
+        for name in ("held_from", "held_last"):
+            self._state[name][:] = NONE
+        self._state["since"][:] = np.minimum(before.injections[first], RECORDED_AFTER_BLANK)
+        self.trail: State = treatments_before(courses, given, params, before)
+        for name, kind in self.CARRIED.items():
+            self.trail[name] = np.zeros(courses.rows.size, kind)
+        self._stable = stable(r, params, self.trail, courses.at)
+        self._early = before_week_24(params, given.day, self.trail)
+        self._unsure = (self.trail["blank"] > 0) | self.trail["history_unknown"]
+        self._counts = counts_for_doubling(params, given, self.trail, courses.at)
+        self._none = given.nothing_given & ~given.skipped & ~given.unscheduled
         self.met = np.zeros(courses.rows.size, np.int8)
         sweep(courses, self._step)
 
@@ -119,10 +110,74 @@ class Walk:
         now = {name: column[:active] for name, column in self._state.items()}
         for name, column in now.items():
             self.trail[name][p] = column
-        params = self._params.at(p)
-        met = criteria_met(self._r, params, self._given, now, p)
+        met = self._criteria_met(now, p)
         self.met[p] = met
-        _advance(now, self._given, params, met, p)
+        self._advance(now, met, p)
+
+    def _criteria_met(self, state: State, p: Ints) -> Truth:
+        """Whether the criteria to withhold are met at ``p``, given the state before."""
+        met = np.where(state["since"] >= RECORDED_AFTER_BLANK, self._stable[p], NO).astype(np.int8)
+        held = np.flatnonzero(state["held"])
+        if held.size:
+            met[held] = truth.opposite(self._worse(state, held, p[held]))
+        met = np.where(self._early[p], np.minimum(met, self._given.success[p]), met)
+        return np.where(self._unsure[p], truth.UNKNOWN, met).astype(np.int8)
+
+    def _worse(self, state: State, held: Ints, p: Ints) -> Truth:
+        """Worse than at the last withheld visit or, where set, than when withholding began."""
+        change = self._params.change.at(p)
+        lately = worse(self._r, change, state["held_last"][held], p)
+        overall = worse(self._r, change, state["held_from"][held], p)
+        asked = pick(self._params.withholding_start_reference, p)
+        return truth.either(lately, truth.where(asked, overall, NO))
+
+    def _advance(self, state: State, met: Truth, p: Ints) -> None:
+        """Take in what was given at ``p``."""
+        injected, none = self._given.injected[p], self._none[p]
+        withheld = none & (met == YES)
+        broken = injected | self._given.not_recorded[p] | (none & ~withheld)
+        state["run"][:] = np.where(broken, 0, state["run"] + (withheld & self._counts[p]))
+        begins = withheld & ~state["held"]
+        np.copyto(state["held_from"], p, where=begins)
+        np.copyto(state["held_last"], p, where=withheld)
+        state["since"][:] = np.where(state["held"] & injected, 1, state["since"] + injected)
+        state["held"][:] = (state["held"] | withheld) & ~injected
+
+
+def treatments_before(courses: Courses, given: Given, params: AsNeeded, before: Before) -> State:
+    """Return what dates and treatments alone say before each visit, one entry a position.
+
+    ``last`` and ``last_but_one`` are the visits whose measurements stand for the last two
+    injections; ``blank`` is how many recorded injections are still needed after a treatment that
+    wasn't recorded.
+    """
+    start = courses.start
+    newest = courses.last_before(given.injected)
+    second = np.where(newest == NONE, NONE, courses.last_before(given.injected)[newest])
+    count = courses.count_before(given.injected)
+    gap = courses.last_before(given.not_recorded)
+    since_gap = count - count[gap]
+    injections = count + before.injections[start]
+    first = np.where(count > 0, first_injected(courses, given), NONE)
+    first_day = np.where(first == NONE, NO_DAY, given.day[first])
+    known = before.first_day[start]
+    unknown = before.unknown[start] & (courses.opens | (injections < params.loading))
+    return {
+        "injections": injections,
+        "last": np.where(newest == NONE, NONE, given.values_at[newest]),
+        "last_but_one": np.where(second == NONE, NONE, given.values_at[second]),
+        "first_day": np.where(known != NO_DAY, known, first_day),
+        "blank": np.where(gap == NONE, 0, np.maximum(RECORDED_AFTER_BLANK - since_gap, 0)),
+        "history_unknown": unknown,
+    }
+
+
+def first_injected(courses: Courses, given: Given) -> Ints:
+    """Return the first injected position of each position's course; NONE where there is none."""
+    at = np.flatnonzero(given.injected)
+    by_course = np.full(courses.at.size, NONE)
+    by_course[courses.start[at[::-1]]] = at[::-1]
+    return by_course[courses.start]
 
 
 def before_week_24(params: AsNeeded, day: Ints, state: State) -> Bools:
@@ -133,31 +188,14 @@ def before_week_24(params: AsNeeded, day: Ints, state: State) -> Bools:
     return early
 
 
-def criteria_met(r: Readings, params: AsNeeded, given: Given, state: State, p: Ints) -> Truth:
-    """Whether the criteria to withhold are met at ``p``, given the state before."""
-    kept = truth.opposite(worse_while_withheld(r, params, state, p))
-    met = truth.where(state["held"], kept, stable(r, params, state, p))
-    early = before_week_24(params, given.day[p], state)
-    met = truth.where(early, truth.both(met, given.success[p]), met)
-    return truth.where((state["blank"] > 0) | state["history_unknown"], truth.UNKNOWN, met)
-
-
 def stable(r: Readings, params: AsNeeded, state: State, p: Ints) -> Truth:
-    """No change between now and the last two injections' visits; NO with fewer than two."""
+    """No change between now and the last two injections' visits."""
     last, earlier = state["last"], state["last_but_one"]
     moved = truth.either(
         changed(r, params.change, earlier, last), changed(r, params.change, last, p)
     )
     outer = truth.where(params.all_pairs, changed(r, params.change, earlier, p), NO)
-    enough = state["since"] >= RECORDED_AFTER_BLANK
-    return truth.where(enough, truth.opposite(truth.either(moved, outer)), NO)
-
-
-def worse_while_withheld(r: Readings, params: AsNeeded, state: State, p: Ints) -> Truth:
-    """Worse than at the last withheld visit or, where set, than when withholding began."""
-    lately = worse(r, params.change, state["held_last"], p)
-    overall = worse(r, params.change, state["held_from"], p)
-    return truth.either(lately, truth.where(params.withholding_start_reference, overall, truth.NO))
+    return truth.opposite(truth.either(moved, outer))
 
 
 def counts_for_doubling(params: AsNeeded, given: Given, state: State, p: Ints) -> Bools:
@@ -166,38 +204,3 @@ def counts_for_doubling(params: AsNeeded, given: Given, state: State, p: Ints) -
     late = given.day[p] > state["first_day"] + params.doubling_from_day
     counts: Bools = known & late & ~given.unscheduled[p] & ~given.skipped[p]
     return counts
-
-
-def _advance(state: State, given: Given, params: AsNeeded, met: Truth, p: Ints) -> None:
-    """Take in what was given at ``p``."""
-    injected, not_recorded = given.injected[p], given.not_recorded[p]
-    not_given = given.nothing_given[p] & ~given.skipped[p] & ~given.unscheduled[p]
-    withheld = not_given & (met == YES)
-    counts = withheld & counts_for_doubling(params, given, state, p)
-    broken = injected | not_recorded | (not_given & ~withheld)
-    state["run"][:] = np.where(broken, 0, state["run"] + counts)
-    _withhold(state, withheld, p)
-    _inject(state, given, params, injected, p)
-    state["blank"][:] = np.where(
-        not_recorded, RECORDED_AFTER_BLANK, np.maximum(state["blank"] - injected, 0)
-    )
-
-
-def _withhold(state: State, withheld: Bools, p: Ints) -> None:
-    begins = withheld & ~state["held"]
-    np.copyto(state["held_from"], p, where=begins)
-    np.copyto(state["held_last"], p, where=withheld)
-    state["held"] |= withheld
-
-
-def _inject(state: State, given: Given, params: AsNeeded, injected: Bools, p: Ints) -> None:
-    """End a withholding where injected; that visit becomes the latest to compare with."""
-    state["since"][:] = np.where(
-        injected, np.where(state["held"], 1, state["since"] + 1), state["since"]
-    )
-    np.copyto(state["last_but_one"], state["last"], where=injected)
-    np.copyto(state["last"], given.values_at[p], where=injected)
-    state["held"] &= ~injected
-    np.copyto(state["first_day"], given.day[p], where=injected & (state["first_day"] == NO_DAY))
-    state["injections"] += injected
-    state["history_unknown"] &= state["injections"] < params.loading
