@@ -69,6 +69,10 @@ class RuleInfo:
     omits: str = ""
 
 
+SMALL = {"rank": np.int8, "ref": np.int32, "part": np.int8, "missing": np.int32, "since": np.int32}
+"""How columns of a ``Judged`` are kept: two million visits under every rule must fit in memory."""
+
+
 @dataclass(frozen=True)
 class Judged:
     """A rule over all visits: one entry a row; ``part`` is the number of the part that counts."""
@@ -80,6 +84,12 @@ class Judged:
     missing: Ints
     since: Ints | None = None
     extra: dict[str, Any] = field(default_factory=dict)
+
+    def __post_init__(self) -> None:
+        for name, kind in SMALL.items():
+            column = getattr(self, name)
+            if column is not None and column.dtype != kind:
+                object.__setattr__(self, name, column.astype(kind))
 
 
 @dataclass(frozen=True)
