@@ -1,16 +1,22 @@
 """Patient codes against the standard's own examples."""
 
 import itertools
+import tomllib
+from pathlib import Path
 
 import pytest
 
 from clinic import codes
 
+FILE = Path(__file__).parents[1] / "trends" / "reference" / "iso7064.toml"
+EXAMPLES = tomllib.loads(FILE.read_text(encoding="utf-8"))["example"]
 
-def test_the_standards_example_has_its_check_characters() -> None:
-    # ISO/IEC 7064:2003, MOD 1271-36: ISO79 -> ISO793W (from memory, check the original).
-    assert codes.check_characters("ISO79") == "3W"
-    assert codes.fits("ISO793W")
+
+@pytest.mark.parametrize("example", EXAMPLES, ids=lambda one: one["body"])
+def test_the_standards_example_has_its_check_characters(example: dict[str, str]) -> None:
+    assert example["system"] == "MOD 1271-36"
+    assert codes.check_characters(example["body"]) == example["check"]
+    assert codes.fits(example["body"] + example["check"])
 
 
 def test_every_single_substitution_and_neighbour_swap_is_caught() -> None:
