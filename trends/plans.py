@@ -26,7 +26,15 @@ class Plans:
 
 
 def plans(v: Visits) -> Plans:
-    """Work out which due day counts after each visit."""
+    """Return which due day counts after each visit; worked out once for the same ``Visits``."""
+    kept = v.__dict__
+    if "_plans" not in kept:
+        kept["_plans"] = _worked_out(v)
+    found: Plans = kept["_plans"]
+    return found
+
+
+def _worked_out(v: Visits) -> Plans:
     at = np.arange(len(v))
     latest = np.maximum.accumulate(np.where(v.is_contact, NO_ROW, at)) if len(v) else at
     visit = np.where(latest >= v.offsets[v.eye], latest, NO_ROW) if len(v) else at
