@@ -1,14 +1,10 @@
 """What rows of one eye or person share: checks across rows, and values carried forward."""
 
-from typing import TYPE_CHECKING
-
 import numpy as np
 
 from trends import words
+from trends.tables import Table
 from trends.visits import MISSING, Ints
-
-if TYPE_CHECKING:
-    from trends.frames import Table
 
 
 def entry_order(read_in: dict[str, Ints]) -> Ints:
@@ -16,7 +12,7 @@ def entry_order(read_in: dict[str, Ints]) -> Ints:
     return np.arange(read_in["date"].size)
 
 
-def check_rows(table: "Table", read_in: dict[str, Ints], columns: dict[str, Ints]) -> None:
+def check_rows(table: Table, read_in: dict[str, Ints], columns: dict[str, Ints]) -> None:
     """Name rows that contradict each other or themselves."""
     person, side, day = table.codes["person"], read_in["eye"], read_in["date"]
     eye = person * 2 + side
@@ -26,7 +22,7 @@ def check_rows(table: "Table", read_in: dict[str, Ints], columns: dict[str, Ints
     _check_one_value(table, eye, "cause", read_in["cause"], "an eye")
 
 
-def _check_due(table: "Table", read_in: dict[str, Ints]) -> None:
+def _check_due(table: Table, read_in: dict[str, Ints]) -> None:
     due, day = read_in["due_date"], read_in["date"]
     early = np.flatnonzero((due != MISSING) & (day != words.NOT_RECORDED) & (due <= day))
     for row in early.tolist():
@@ -34,7 +30,7 @@ def _check_due(table: "Table", read_in: dict[str, Ints]) -> None:
         table.refuse([row], "due_date", shown, "a day after the visit", "a plan looks ahead")
 
 
-def _check_doubles(table: "Table", eye: Ints, day: Ints, kind: Ints) -> None:
+def _check_doubles(table: Table, eye: Ints, day: Ints, kind: Ints) -> None:
     key = np.stack([eye, day, kind], axis=1)
     _names, first, inverse = np.unique(key, axis=0, return_index=True, return_inverse=True)
     again = np.flatnonzero(first[inverse.ravel()] != np.arange(eye.size))
@@ -45,11 +41,11 @@ def _check_doubles(table: "Table", eye: Ints, day: Ints, kind: Ints) -> None:
             "date",
             shown,
             "one row a person, eye, day and kind",
-            f"row {int(first[inverse.ravel()[row]]) + 1} holds the same visit",
+            f"row {int(table.rows[first[inverse.ravel()[row]]]) + 1} holds the same visit",
         )
 
 
-def _check_one_value(table: "Table", key: Ints, column: str, values: Ints, of: str) -> None:
+def _check_one_value(table: Table, key: Ints, column: str, values: Ints, of: str) -> None:
     given = np.flatnonzero(values >= 0)
     if not given.size:
         return

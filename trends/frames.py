@@ -3,103 +3,39 @@
 Each distinct text of a column is read once, so two million rows cost what their distinct texts do.
 """
 
-import math
-from collections.abc import Callable
-from dataclasses import dataclass, field
-from typing import TYPE_CHECKING, Any
+from collections.abc import Mapping, Sequence
+from dataclasses import replace
+from typing import TYPE_CHECKING
 
 import numpy as np
 
 from trends import carried, words
-from trends.cells import NEEDED, READERS, TIDY_COLUMNS
-from trends.errors import EbblineError, FrameRefused, RefusedCell
+from trends.cells import NEEDED, READERS
+from trends.errors import EbblineError, FrameRefused
 from trends.measures import acuity, agents
+from trends.tables import Table, table_of, table_of_rows
 from trends.visits import MISSING, Ints, Visits, coded, sorted_visits
 
 if TYPE_CHECKING:
     import pandas as pd
 
 
-@dataclass
-class Table:
-    """The cells of a frame as text codes: ``codes[column]`` (n,) into ``texts[column]``."""
-
-    size: int
-    codes: dict[str, Ints] = field(default_factory=dict)
-    texts: dict[str, list[str]] = field(default_factory=dict)
-    refused: list[RefusedCell] = field(default_factory=list)
-
-    def refuse(self, rows: Any, column: str, value: str, allowed: str, reason: str) -> None:
-        """Name refused cells; rows count from 1."""
-        self.refused += [RefusedCell(int(row) + 1, column, value, allowed, reason) for row in rows]
-
-    def text_of(self, column: str) -> list[str]:
-        """Return the text of every row of a column."""
-        texts = self.texts[column]
-        return [texts[code] for code in self.codes[column].tolist()]
-
-    def numbers(self, column: str, absent: int, reader: Callable[[str], int]) -> Ints:
-        """Read a column; blank is ``absent``; every row of a refused text is named."""
-        values = np.full(len(self.texts[column]), absent, dtype=np.int64)
-        for place, text in enumerate(self.texts[column]):
-            if not text:
-                continue
-            try:
-                values[place] = reader(text)
-            except EbblineError as error:
-                rows = np.flatnonzero(self.codes[column] == place)
-                self.refuse(rows, column, text, error.allowed, error.why)
-        return values[self.codes[column]]
-
-
-def plain(cell: Any) -> str:
-    """Return a cell's text: None and NaN are blank, whole floats lose their point."""
-    if cell is None or (isinstance(cell, float) and math.isnan(cell)) or str(cell) == "NaT":
-        return ""
-    if isinstance(cell, float) and cell.is_integer():
-        return str(int(cell))
-    if hasattr(cell, "isoformat"):
-        return str(cell.isoformat())[:10]
-    return str(cell).strip()
-
-
-def table_of(frame: "pd.DataFrame") -> Table:
-    """Return the frame's cells as coded text; refuse unknown, doubled and absent columns."""
-    import pandas as pd
-
-    table = Table(len(frame))
-    names = [str(name).strip() for name in frame.columns]
-    for name in dict.fromkeys(names):
-        if name not in TIDY_COLUMNS or names.count(name) > 1:
-            reason = "the column is not known" if name not in TIDY_COLUMNS else "it stands twice"
-            table.refuse([-1], name, name, ", ".join(TIDY_COLUMNS), reason)
-    for needed in NEEDED:
-        if needed not in names:
-            table.refuse([-1], needed, "", "a column of this name", "every visit needs it")
-    if table.refused:
-        raise FrameRefused(table.refused)
-    if not table.size:
-        table.refuse([-1], "person", "", "at least one row", "the file holds no visit")
-        raise FrameRefused(table.refused)
-    for name in TIDY_COLUMNS:
-        if name not in names:
-            table.codes[name] = np.zeros(table.size, dtype=np.int64)
-            table.texts[name] = [""]
-            continue
-        codes, texts = pd.factorize(frame.iloc[:, names.index(name)], use_na_sentinel=False)
-        shown = [plain(text) for text in texts.tolist()]
-        distinct = list(dict.fromkeys(shown))
-        place = np.array([distinct.index(text) for text in shown]) if len(shown) < 300 else None
-        if place is None:
-            where = {text: number for number, text in enumerate(distinct)}
-            place = np.array([where[text] for text in shown])
-        table.codes[name], table.texts[name] = place[codes], distinct
-    return table
-
-
 def read(frame: "pd.DataFrame", *, one_scanner_assumed: bool = False) -> Visits:
     """Return the visits of a frame; raises ``FrameRefused`` naming every refused cell."""
-    table = table_of(frame)
+    return _visits(table_of(frame), one_scanner_assumed=one_scanner_assumed)
+
+
+def read_rows(rows: Sequence[Mapping[str, str]]) -> Visits:
+    """Return the visits of a few rows of text cells; the same checks, without loading pandas."""
+    return _visits(table_of_rows(rows))
+
+
+def _visits(table: Table, *, one_scanner_assumed: bool = False) -> Visits:
+    table.drop_blank_rows()
+    if not table.size and not table.refused:
+        table.refuse([-1], "person", "", "at least one row", "the file holds no visit")
+    if not table.size:
+        raise FrameRefused(table.refused)
     for column in NEEDED:
         blank = np.flatnonzero(
             np.array([not text for text in table.texts[column]])[table.codes[column]]
@@ -118,14 +54,15 @@ def read(frame: "pd.DataFrame", *, one_scanner_assumed: bool = False) -> Visits:
         raise FrameRefused(sorted(table.refused, key=lambda cell: cell.row))
     columns["scanner_assumed"] = np.full(table.size, int(one_scanner_assumed))
     carried.fill(table.codes["person"], read_in["eye"], read_in["date"], columns)
-    return sorted_visits(
+    visits = sorted_visits(
         table.text_of("person"),
         read_in["eye"],
         read_in["date"],
         columns,
         lists,
-        as_entered={name: table.text_of(name) for name in ("acuity", "acuity_notation", "agent")},
+        as_entered={name: table.as_given(name) for name in ("acuity", "acuity_notation", "agent")},
     )
+    return replace(visits, source_row=table.rows[visits.source_row])
 
 
 def _columns(

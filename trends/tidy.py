@@ -43,8 +43,14 @@ def read(path: Path, as_of: dt.date, *, one_scanner_assumed: bool = False) -> Vi
         # A line longer than the header would shift its cells into the wrong columns.
         with warnings.catch_warnings():
             warnings.simplefilter("error", pd.errors.ParserWarning)
+            # A blank line stays a row without cells, so that later rows keep their number.
             frame = pd.read_csv(
-                path, dtype=str, keep_default_na=False, encoding="utf-8-sig", index_col=False
+                path,
+                dtype=str,
+                keep_default_na=False,
+                encoding="utf-8-sig",
+                index_col=False,
+                skip_blank_lines=False,
             )
     except (
         UnicodeDecodeError,
