@@ -96,6 +96,15 @@ class LimitSet:
         return _checked(cls._read(text))
 
     @classmethod
+    def from_stored(cls, text: str) -> "LimitSet":
+        """Read a set that was valid when it was stored, maybe by an earlier version.
+
+        An entry that later versions ask for has the shipped value and says so in its note, so that
+        an upgrade doesn't take a clinic's set away; the text and its digest stay as adopted.
+        """
+        return _checked(_completed(cls._read(text)))
+
+    @classmethod
     def _read(cls, text: str) -> "LimitSet":
         text = text.replace("\r\n", "\n").strip() + "\n"
         try:
@@ -176,6 +185,31 @@ def _checked(found: LimitSet) -> LimitSet:
                 raise _refused(name, name, ", ".join(known))
             _check_table(table, known[name])
     return found
+
+
+ADDED_LATER = "not in the adopted text; the value a later version ships"
+
+
+def _completed(found: LimitSet) -> LimitSet:
+    """Return a set with the entries its tables lack, as shipped; tables it lacks stay off."""
+    return replace(
+        found,
+        rules=_filled(found.rules, _shape().rules),
+        regimens=_filled(found.regimens, _shape().regimens),
+    )
+
+
+def _filled(tables: Mapping[str, Table], known: Mapping[str, Table]) -> dict[str, Table]:
+    filled = {}
+    for name, table in tables.items():
+        model = known[name].entries if name in known else {}
+        added = {
+            entry_name: replace(entry, note=ADDED_LATER)
+            for entry_name, entry in model.items()
+            if entry_name not in table.entries and "*" not in _by_class(entry_name)
+        }
+        filled[name] = replace(table, entries={**table.entries, **added})
+    return filled
 
 
 def _by_class(name: str) -> str:

@@ -18,7 +18,7 @@ class Adopted:
 @lru_cache(maxsize=32)
 def parsed(text: str) -> LimitSet:
     """Return a stored limit set; the text never changes, so it is read once."""
-    return LimitSet.from_toml(text)
+    return LimitSet.from_stored(text)
 
 
 def adopted_for(site: Site) -> dict[str, Adopted]:

@@ -1,6 +1,7 @@
 """The limit-set page: every entry with unit and source, and what is proposed or in force."""
 
-from dataclasses import dataclass
+from collections.abc import Collection
+from dataclasses import dataclass, replace
 
 from clinic.models import Adoption, LimitSetText
 from clinic.selectors.access import Here
@@ -9,6 +10,10 @@ from trends.citations import citation
 from trends.limits import LimitSet
 from trends.regimens import registry as regimens
 from trends.rules import registry as rules
+
+FIRST = "general"
+"""The set shown first where none is in force."""
+OTHER_TITLE = "Comparison with earlier values"
 
 
 @dataclass(frozen=True)
@@ -42,6 +47,15 @@ class SetPage:
     limits: LimitSet
     tables: tuple[TableLines, ...]
     from_memory: int
+    in_force: bool = False
+    against: str = ""
+    differing: tuple[TableLines, ...] = ()
+    absent: tuple[str, ...] = ()
+
+    @property
+    def alike(self) -> tuple[TableLines, ...]:
+        """The tables that read the same as in the set compared with."""
+        return tuple(table for table in self.tables if table not in self.differing)
 
 
 @dataclass(frozen=True)
@@ -59,7 +73,7 @@ def set_page(row: LimitSetText) -> SetPage:
     named = {**rules.by_id(), **regimens.by_id()}
     tables = [
         TableLines(
-            str(named[table.name].INFO.title) if table.name in named else table.name,
+            str(named[table.name].INFO.title) if table.name in named else OTHER_TITLE,
             table.name,
             tuple(
                 EntryLine(
@@ -81,11 +95,41 @@ def set_page(row: LimitSetText) -> SetPage:
     return SetPage(row, limits, tuple(tables), from_memory)
 
 
+def compared(one: SetPage, base: SetPage, *, in_force: bool) -> SetPage:
+    """Return a set's page with what differs from another's, table by table."""
+    theirs = {table.name: table.lines for table in base.tables}
+    names = {table.name for table in one.tables}
+    return replace(
+        one,
+        in_force=in_force,
+        against="" if one.row.pk == base.row.pk else base.limits.title,
+        differing=tuple(t for t in one.tables if theirs.get(t.name) != t.lines),
+        absent=tuple(table.title for table in base.tables if table.name not in names),
+    )
+
+
+def _sets(in_force: Collection[str]) -> tuple[SetPage, ...]:
+    """Return every stored set, those in force first, each beside the first of them."""
+    pages = [set_page(row) for row in LimitSetText.objects.order_by("name", "pk")]
+    digests = [page.limits.digest in in_force for page in pages]
+    pages = [
+        page
+        for _order, page in sorted(
+            zip(digests, pages, strict=True),
+            key=lambda both: (not both[0], both[1].row.name != FIRST, both[1].limits.title),
+        )
+    ]
+    return tuple(
+        compared(page, pages[0], in_force=page.limits.digest in in_force) for page in pages
+    )
+
+
 def limit_page(here: Here) -> LimitPage:
     """Return the page of a site."""
     open_ones = Adoption.objects.filter(site=here.site, confirmation=None)
+    adopted = adopted_for(here.site)
     return LimitPage(
-        sets=tuple(set_page(row) for row in LimitSetText.objects.order_by("name", "pk")),
-        in_force=tuple(one.words for one in adopted_for(here.site).values()),
+        sets=_sets({one.limits.digest for one in adopted.values()}),
+        in_force=tuple(one.words for one in adopted.values()),
         proposed=tuple(open_ones.select_related("limit_set", "by").order_by("-seq")),
     )

@@ -3,7 +3,9 @@
 import pytest
 from time_machine import travel
 
-from clinic.models import Adoption, AdoptionConfirmed
+from clinic.models import Adoption, AdoptionConfirmed, User
+from clinic.selectors.access import site_for
+from clinic.selectors.limit_page import LimitPage, limit_page
 from clinic.services.limit_sets import from_memory, limit_set_seed
 from tests.clinic.at_the_desk import NOW, Desk, days_ago, open_rules, signed_in
 from tests.clinic.filled_forms import form_to, forms_in, own_form, words_of
@@ -127,3 +129,19 @@ def test_one_person_holding_both_roles_may_do_both(desk: Desk) -> None:
     propose(desk)
     sent = {"ticked": from_memory(shipped("general"))}
     assert signed_in(desk.steward).post(ADOPT, sent).status_code == 302
+
+
+def test_the_set_in_force_stands_first_and_others_show_what_they_change(desk: Desk) -> None:
+    limit_page = page_of(Desk("moorland").clinician, "moorland")
+    first, *others = limit_page.sets
+    assert first.in_force and first.row.name == "general" and not first.against
+    assert not any(one.in_force for one in others)
+    early = next(one for one in others if one.row.name == "protocol_i")
+    # Protocol I changes the as-needed numbers only, and leaves the other regimens out.
+    assert [table.name for table in early.differing] == ["as_needed_stability"]
+    assert "Treat and extend" in early.absent and "Fixed interval" in early.absent
+    assert {table.name for table in early.alike} >= {"thickening", "letters_lost", "pressure"}
+
+
+def page_of(user: User, slug: str) -> LimitPage:
+    return limit_page(site_for(user, slug))

@@ -1,5 +1,6 @@
 """A limit set that rules couldn't run with, or whose numbers nobody can check, is refused."""
 
+import hashlib
 import tomllib
 
 import pytest
@@ -106,3 +107,20 @@ def test_written_out_and_read_again_a_set_has_the_same_entries() -> None:
     general = shipped("general")
     again = LimitSet.from_toml(limit_texts.render(tomllib.loads(general.text)))
     assert list(again.entries()) == list(general.entries()) and again.causes == general.causes
+
+
+def test_a_set_stored_by_an_earlier_version_keeps_its_numbers_and_its_digest() -> None:
+    # As if "note_below_days" of too_soon and the rule poor_scan had been added after adoption.
+    lines = GENERAL.splitlines()
+    start = lines.index("[rules.poor_scan]")
+    end = next(n for n in range(start + 1, len(lines)) if lines[n].startswith("["))
+    kept = [line for line in lines[:start] + lines[end:] if "note_below_days" not in line]
+    early = "\n".join(kept).replace("below_days = { value = 21", "below_days = { value = 25") + "\n"
+    with pytest.raises(LimitSetRefused, match="note_below_days"):
+        LimitSet.from_toml(early)
+    stored = LimitSet.from_stored(early)
+    table = stored.rules["too_soon"]
+    assert (table["below_days"], table["note_below_days"]) == (25, 28)
+    assert "later version" in table.entries["note_below_days"].note
+    assert stored.rule("poor_scan") is None
+    assert stored.text == early and stored.digest == hashlib.sha256(early.encode()).hexdigest()
