@@ -6,7 +6,8 @@ until the check characters avoid them too, so that I, L and O can be read as 1, 
 
 import secrets
 
-ALPHABET = "0123456789ABCDEFGHIJKLMNOPQRSTUVWXYZ"
+from trends.measures.check_characters import ALPHABET, check_characters, fits
+
 LOOK_ALIKES = "ILOU"
 BODY_ALPHABET = "".join(letter for letter in ALPHABET if letter not in LOOK_ALIKES)
 BODY_LENGTH = 8
@@ -24,20 +25,6 @@ class CodeMistyped(ValueError):
             f"The code {self.typed!r} is not a patient code: {why}. A code has {LENGTH} letters "
             "and digits, the last two check the others. Compare it with the card and type it again."
         )
-
-
-def check_characters(body: str) -> str:
-    """Return the two check characters of a body (ISO/IEC 7064 MOD 1271-36)."""
-    total = 0
-    for letter in body + "0":
-        total = (total * 36 + ALPHABET.index(letter)) % 1271
-    total = total * 36 % 1271
-    return "".join(ALPHABET[digit] for digit in divmod((1 - total) % 1271, 36))
-
-
-def fits(code: str) -> bool:
-    """Say whether a whole code's check characters fit (its value is 1 modulo 1271)."""
-    return all(letter in ALPHABET for letter in code) and int(code, 36) % 1271 == 1
 
 
 def fresh() -> str:

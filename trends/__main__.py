@@ -6,11 +6,13 @@ import sys
 from collections.abc import Iterator, Sequence
 from pathlib import Path
 
-from trends import ENGINE_VERSION, cells, limits, summary, tidy
+from trends import ENGINE_VERSION, cells, limits, sources, summary, tidy
 from trends.citations import citation
 from trends.errors import EbblineError, FrameRefused, LimitSetRefused
 from trends.notice import NOTICE
+from trends.printed import WIDTH, sourced
 from trends.review import review
+from trends.reviewable import verdict_file
 from trends.visits import Visits, day_date
 from trends.wording import VerdictRow, verdict_rows
 
@@ -64,7 +66,43 @@ def parser() -> argparse.ArgumentParser:
     )
     sets = commands.add_parser("limit-sets", help="list the shipped limit sets with sources")
     sets.add_argument("--brief", action="store_true", help="names and versions only")
+    said = commands.add_parser(
+        "sources",
+        help="print every rule, regimen, limit and formula with its source and a worked example",
+        description="Print what each number rests on: the rule in a clinician's words, its limits "
+        "with citation, place, population and strength, numbers marked 'from memory, check the "
+        "original', and invented examples worked out by the engine now.",
+    )
+    said.add_argument(
+        "--rule", metavar="NAME", help="only this rule, regimen, formula or range; see --names"
+    )
+    said.add_argument("--names", action="store_true", help="print the names only")
+    said.add_argument(
+        "--verdicts",
+        type=Path,
+        metavar="FILE",
+        help="write the rendered verdicts of every example to FILE instead",
+    )
     return top
+
+
+def run_sources(options: argparse.Namespace) -> int:
+    """Print sources, their names, or write the file of rendered verdicts; returns the exit code."""
+    known = sources.by_name()
+    if options.rule is not None and options.rule not in known:
+        print(f"--rule {options.rule}: allowed: {', '.join(known)}", file=sys.stderr)
+        return REFUSED
+    if options.verdicts is not None:
+        try:
+            options.verdicts.write_text(verdict_file(), encoding="utf-8")
+        except OSError as error:
+            print(f"{options.verdicts} can't be written: {error}", file=sys.stderr)
+            return REFUSED
+        print(f"rendered verdicts written to {options.verdicts}")
+        return 0
+    for one in [known[options.rule]] if options.rule else known.values():
+        print(one.name if options.names else "\n".join(sourced(one)) + "\n" + "-" * WIDTH)
+    return 0
 
 
 def worded(
@@ -127,11 +165,14 @@ def run_limit_sets(options: argparse.Namespace) -> int:
     return 0
 
 
+RUN = {"review": run_review, "limit-sets": run_limit_sets, "sources": run_sources}
+
+
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command; returns the exit code."""
     options = parser().parse_args(arguments)
     try:
-        return run_review(options) if options.command == "review" else run_limit_sets(options)
+        return RUN[options.command](options)
     except LimitSetRefused as error:
         print(error, file=sys.stderr)
         return REFUSED

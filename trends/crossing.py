@@ -13,7 +13,7 @@ from trends.comparable import previous
 from trends.comparisons import Comparisons
 from trends.limits import Table
 from trends.ruling import Description, Judged, bit, judged_one
-from trends.verdict import RAISED
+from trends.verdict import LIMIT_NOT_REACHED, RAISED
 from trends.visits import MISSING, Bools, Ints, Visits
 
 NO_LIMIT = 10**6
@@ -106,6 +106,8 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table, unknown: str) -
         )
     else:
         sentence = f"{eye}: CST {now} µm, {_against(now, limit)}"
+        if int(judged.outcome[row]) == LIMIT_NOT_REACHED and now >= limit:
+            sentence += f", not beyond what two scans differ by chance ({v.cst_um[ref]} before)"
     return Description(
         sentence=sentence,
         values=saying.values(v, row, ref, "cst_um"),

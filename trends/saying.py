@@ -12,6 +12,28 @@ MONTHS_OLD_AFTER_DAYS = 183
 EYES = {0: "Right eye", 1: "Left eye"}
 
 
+COLUMN_WORDS = {
+    "cst_um": "CST",
+    "oct_class": "OCT class",
+    "irf": "intraretinal fluid",
+    "srf": "subretinal fluid",
+    "iop_mmhg": "IOP",
+    "iop_method": "tonometer",
+    "iop_after_mmhg": "IOP after treatment",
+    "agent": "what was given",
+    "due_date": "due day",
+    "kind": "kind of visit",
+    "acuity_correction": "correction of the acuity",
+    "hist_treatments": "treatments before the log",
+}
+"""Columns whose name isn't a word of the clinic."""
+
+
+def column(name: str) -> str:
+    """Return a column that is missing in a clinician's words."""
+    return COLUMN_WORDS.get(name, name.replace("_", " "))
+
+
 def eye(v: Visits, row: int) -> str:
     """Return "Right eye" or "Left eye"."""
     return EYES[int(v.side[row])]

@@ -9,7 +9,7 @@ from typing import Any, NamedTuple
 
 import numpy as np
 
-from trends import ENGINE_VERSION, words
+from trends import ENGINE_VERSION, saying, words
 from trends.citations import citation
 from trends.limits import LimitSet, Table, table_for
 from trends.regimens import registry as regimens
@@ -88,7 +88,7 @@ def working(
     """Return the nine parts of a shown verdict, JSON-able; ``cited`` as ``sources`` gives it."""
     name, version = set_names(reviewed.limits)
     unknowns = list(said.unknowns)
-    unknowns += [f"not recorded or not comparable: {column}" for column in facts["missing"]]
+    unknowns += [f"not recorded or not comparable: {saying.column(c)}" for c in facts["missing"]]
     return {
         "fact": said.sentence,
         "values": said.values,
@@ -180,8 +180,13 @@ def sentence_of(said: Description, outcome: int, missing: tuple[str, ...]) -> st
     """Return the sentence; one that couldn't be told says what was missing."""
     if outcome != COULD_NOT_TELL or not said.sentence:
         return said.sentence
-    why = f"missing or not comparable: {', '.join(missing)}" if missing else "no earlier value"
-    return f"{said.sentence}. Couldn't tell: {why}"
+    return f"{said.sentence}. Couldn't tell: {missing_words(missing)}"
+
+
+def missing_words(missing: Iterable[str]) -> str:
+    """Return why a rule couldn't tell: what is missing or not comparable, or no earlier value."""
+    named = ", ".join(map(saying.column, missing))
+    return f"missing or not comparable: {named}" if named else "no earlier value"
 
 
 def regimen_rows(

@@ -5,6 +5,8 @@ from dataclasses import dataclass
 from functools import cache
 from importlib import resources
 
+from trends.citations import citation
+
 
 @dataclass(frozen=True)
 class Repeatability:
@@ -20,7 +22,7 @@ def _all() -> dict[tuple[str, str], Repeatability]:
     file = resources.files("trends.measures") / "repeatability.toml"
     data = tomllib.loads(file.read_text(encoding="utf-8"))
     return {
-        (what, method): Repeatability(one["tenths"], one["unit"], one["source"])
+        (what, method): Repeatability(one["tenths"], one["unit"], citation(one["cite"]).text)
         for what, methods in data.items()
         for method, one in methods.items()
     }

@@ -8,6 +8,8 @@ falsely. Runs always and can't be switched off; shows the site's own emergency t
 Raised: a call on day 4, "pain, red, blurred". Not: asked, none.
 """
 
+from typing import Any
+
 import numpy as np
 
 from trends import saying
@@ -103,8 +105,7 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     eye, which = saying.eye(v, row), int(judged.part[row])
     days = int(v.day[row]) - int(last_treated_day_of(v, row))
     after = f", {days} days after the last treatment" if last_treated_day_of(v, row) >= 0 else ""
-    names = symptoms.names(int(v.symptoms_present[row]) | int(v.symptoms_gone[row]))
-    shown = ", ".join(name.replace("_", " ") for name in names) or "none"
+    shown = _named(int(v.symptoms_present[row])) or _named(int(v.symptoms_gone[row])) or "none"
     present = which == INFO.parts.index("present now")
     sentence = f"{eye}: {shown} {'now' if present else 'passed'}{after}"
     if which == INFO.parts.index("fellow eye"):
@@ -120,14 +121,26 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     first = which in (0, 1)
     return Description(
         sentence=sentence,
-        values=saying.treatment_value(v, saying.last_treatment(v, row))
-        + [saying.own_value(v, row, "symptoms", shown, "", "asked")],
+        values=saying.treatment_value(v, saying.last_treatment(v, row)) + _asked(v, row),
         limit="any of the list, present now",
         noise="none: a symptom is what the patient says",
         options=[] if first else ["ask again", "look again at the next visit"],
         not_for=["a promise that nothing is wrong when none is named"],
         emergency=first,
     )
+
+
+def _named(bits: int) -> str:
+    return ", ".join(name.replace("_", " ") for name in symptoms.names(bits))
+
+
+def _asked(v: Visits, row: int) -> list[dict[str, Any]]:
+    """Return what was told, present and passed apart; nothing where nobody asked."""
+    if not int(v.symptoms_recorded[row]):
+        return []
+    now, gone = _named(int(v.symptoms_present[row])), _named(int(v.symptoms_gone[row]))
+    told = "; ".join(part for part in (now, f"{gone} (passed)" if gone else "") if part)
+    return [saying.own_value(v, row, "symptoms", told or "none", "", "asked")]
 
 
 def last_treated_day_of(v: Visits, row: int) -> int:

@@ -108,7 +108,9 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     """Put one row into words."""
     ref, eye, which = int(judged.ref[row]), saying.eye(v, row), int(judged.part[row])
     if int(v.logmar_e4[row]) == MISSING:
-        return Description(f"{eye}: no acuity recorded on {saying.day(v, row)}")
+        off = saying.is_given(v, row, "acuity")
+        what = f"acuity {saying.value(v, row, 'acuity')['value']}, off the chart," if off else ""
+        return Description(f"{eye}: {what or 'no acuity recorded'} on {saying.day(v, row)}")
     if ref < 0:
         now = saying.value(v, row, "acuity")["value"]
         return Description(
@@ -183,5 +185,6 @@ def _change(v: Visits, row: int, ref: int, lost: int, counted: bool) -> str:
     now = saying.value(v, row, "acuity")["value"]
     verb = "fell" if lost > 0 else "rose" if lost < 0 else "did not change"
     in_lines = f" {abs(lost) / LINE_E4:.1f} lines"
-    size = f" {abs(lost) / LETTER_E4:g} letters" if counted else in_lines
+    letters = abs(lost) / LETTER_E4
+    size = f" {letters:g} letter{'' if letters == 1 else 's'}" if counted else in_lines
     return f"acuity {verb}{size if lost else ''} ({before} to {now})"

@@ -7,6 +7,9 @@ list an eye too many. Left out on purpose: visits before the last one.
 Raised: measured on 18 January, asked on 19 January. Not: asked on 18 January.
 """
 
+from dataclasses import replace
+from typing import Any
+
 import numpy as np
 
 from trends import saying, words
@@ -69,9 +72,10 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     """Put one eye into words; ``row`` is the eye's number."""
     facts = Followup(v, int(judged.extra["today"]))
     who = saying.eye(v, int(facts.latest[row]))
-    limit = f"{limits.number('days')} {limits.entries['days'].unit}"
+    days, unit = limits.number("days"), limits.entries["days"].unit
+    limit = f"{days} {unit.replace('days', 'day', 1) if days == 1 else unit}"
     if not facts.seen[row]:
-        return described(f"{who}: no attended visit is in the log", [], [], limit)
+        return _described(f"{who}: no attended visit is in the log", [], [], limit)
     day, since = int(v.day[facts.last[row]]), int(facts.days_since[row])
     if _recorded(facts)[row] or not _measured(facts)[row]:
         state = "decided or recorded" if _recorded(facts)[row] else "not measured"
@@ -82,4 +86,17 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
             "recorded as given"
         )
     arithmetic = [f"{date_words(facts.today)} - {date_words(day)} = {days_words(since)}; {limit}"]
-    return described(sentence, [value("last attended visit", day)], arithmetic, limit)
+    return _described(sentence, [value("last attended visit", day)], arithmetic, limit)
+
+
+def _described(*said: Any) -> Description:
+    """Return a description with this rule's own options: it is about a record, not a date."""
+    return replace(
+        described(*said),
+        options=[
+            "record what was decided or given",
+            "ask who saw the patient",
+            "no change, look again",
+        ],
+        not_for=["decisions kept elsewhere and not entered here"],
+    )
