@@ -6,7 +6,7 @@ stands here too. Read by the command, by the app's page and by the tests.
 
 import inspect
 import tomllib
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass
 from importlib import resources
 from types import ModuleType
@@ -15,11 +15,11 @@ from typing import Any
 from trends import limits, worked
 from trends.citations import Citation, citation
 from trends.formulas import formulas
+from trends.parts import FROM_MEMORY
 from trends.regimens import registry as regimens
 from trends.rules import registry
 from trends.worked import Story
 
-FROM_MEMORY = "from memory, check the original"
 GROUPS = (
     "Rules at a visit",
     "Rules of the day asked",
@@ -66,9 +66,31 @@ class Sourced:
     always_on: bool = False
 
     @property
+    def paragraphs(self) -> tuple[str, ...]:
+        """The words in paragraphs."""
+        return tuple(" ".join(one.split()) for one in self.words.split("\n\n"))
+
+    @property
     def memory(self) -> bool:
         """Say whether a number of it is from memory."""
         return any(one.memory for one in (*self.limits, *self.elsewhere))
+
+
+def shown_value(one: Limit) -> str:
+    """Return a number with its unit, in words."""
+    if isinstance(one.value, bool):
+        return "yes" if one.value else "no"
+    value = str(one.value)
+    return value.replace("_", " ") if one.unit == "rank" else f"{value} {one.unit}".strip()
+
+
+def limit_words(one: Limit, cites: Sequence[Citation]) -> str:
+    """Return a number with the number of its source, place, memory mark and note."""
+    shown = f"{one.name} = {shown_value(one)}; " if shown_value(one) else ""
+    place = f", {one.place}" if one.place else ""
+    mark = f" [{FROM_MEMORY}]" if one.memory else ""
+    note = f". {one.note}" if one.note else ""
+    return f"{shown}source {cites.index(one.citation) + 1}{place}{mark}{note}"
 
 
 def _limits(table: limits.Table | None, limit_set: str) -> tuple[Limit, ...]:

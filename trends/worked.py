@@ -6,8 +6,9 @@ arithmetic aren't kept there: they are worked out when asked for, so they can't 
 """
 
 import datetime as dt
+import re
 import tomllib
-from collections.abc import Mapping
+from collections.abc import Container, Mapping, Sequence
 from dataclasses import dataclass, replace
 from functools import cache
 from importlib import resources
@@ -56,8 +57,9 @@ class Story:
         return replace(v, columns=columns)
 
     def reviewed(self) -> Reviewed:
-        """Return the engine's review of these visits."""
-        return review(self.visits(), shipped(self.limit_set), self.as_of)
+        """Return the engine's review: the rule alone, or every rule at a quiet visit."""
+        only = None if self.about == QUIET else [self.about]
+        return review(self.visits(), shipped(self.limit_set), self.as_of, only)
 
     def verdicts(self) -> list[VerdictRow]:
         """Return what the rule or regimen says at each visit, in order."""
@@ -108,3 +110,18 @@ def named() -> list[str]:
     return sorted(
         file.name.removesuffix(".toml") for file in folder.iterdir() if file.name[-5:] == ".toml"
     )
+
+
+def shown_whole(found: Sequence[VerdictRow], outcomes: Container[str] = ()) -> list[bool]:
+    """Say which verdicts of a story are laid out whole: raised ones, and the first of each kind.
+
+    Kinds are readings (one that differs in its numbers only is the same) and ``outcomes`` named.
+    """
+    seen: set[tuple[str, str]] = set()
+    out = []
+    for one in found:
+        kind = (re.sub("[0-9]+", "", one.reading), one.outcome)
+        first = kind not in seen and (bool(one.reading) or one.outcome in outcomes)
+        seen.add(kind)
+        out.append(bool(one.rank) or first)
+    return out

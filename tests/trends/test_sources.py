@@ -12,9 +12,10 @@ from trends import limits, worked
 from trends.__main__ import main
 from trends.citations import citations
 from trends.formulas import WORKERS, formulas
+from trends.parts import FROM_MEMORY
 from trends.regimens import registry as regimens
 from trends.rules import registry
-from trends.sources import FROM_MEMORY, GROUPS, by_name
+from trends.sources import GROUPS, by_name
 
 FOLDER = Path(trends.__file__).parent
 RULES, REGIMENS = registry.by_id(), regimens.by_id()
