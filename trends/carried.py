@@ -2,7 +2,7 @@
 
 import numpy as np
 
-from trends import words
+from trends import in_force, words
 from trends.tables import Table
 from trends.visits import MISSING, Ints
 
@@ -17,6 +17,8 @@ def check_rows(table: Table, read_in: dict[str, Ints], columns: dict[str, Ints])
     person, side, day = table.codes["person"], read_in["eye"], read_in["date"]
     eye = person * 2 + side
     _check_due(table, read_in)
+    _check_blood(table, read_in)
+    _check_context_days(table, day, columns)
     _check_doubles(table, eye, day, columns["kind"])
     _check_one_value(table, person, "sex", read_in["sex"], "a person")
     _check_one_value(table, eye, "cause", read_in["cause"], "an eye")
@@ -28,6 +30,22 @@ def _check_due(table: Table, read_in: dict[str, Ints]) -> None:
     for row in early.tolist():
         shown = table.texts["due_date"][int(table.codes["due_date"][row])]
         table.refuse([row], "due_date", shown, "a day after the visit", "a plan looks ahead")
+
+
+def _check_blood(table: Table, read_in: dict[str, Ints]) -> None:
+    upper, lower = read_in["systolic_mmhg"], read_in["diastolic_mmhg"]
+    swapped = np.flatnonzero((upper != MISSING) & (lower != MISSING) & (upper <= lower))
+    for row in swapped.tolist():
+        shown = table.texts["diastolic_mmhg"][int(table.codes["diastolic_mmhg"][row])]
+        allowed = f"below the systolic {int(upper[row])} mmHg"
+        table.refuse([row], "diastolic_mmhg", shown, allowed, "the two may be swapped")
+
+
+def _check_context_days(table: Table, day: Ints, columns: dict[str, Ints]) -> None:
+    late = (columns["stroke_day"] > day) | (columns["heart_attack_day"] > day)
+    for row in np.flatnonzero(late & (day != words.NOT_RECORDED)).tolist():
+        shown = table.texts["context"][int(table.codes["context"][row])]
+        table.refuse([row], "context", shown, "days up to the visit's own", "it came later")
 
 
 def _check_doubles(table: Table, eye: Ints, day: Ints, kind: Ints) -> None:
@@ -88,3 +106,4 @@ def fill(person: Ints, side: Ints, day: Ints, columns: dict[str, Ints]) -> None:
     columns["cause"] = spread(eye, columns["cause"])
     columns["status"] = carry(eye, day, columns["status"])
     columns["regimen"] = carry(eye, day, columns["regimen"])
+    in_force.fill(person, eye, day, columns)

@@ -10,7 +10,7 @@ from collections.abc import Callable, Mapping
 
 from trends import words
 from trends.errors import EbblineError
-from trends.measures import agents, pressure, symptoms, thickness
+from trends.measures import agents, blood, context, pressure, symptoms, thickness
 from trends.measures.ranges import ranges
 from trends.visits import day_number
 
@@ -76,6 +76,23 @@ def _symptom_bits(text: str) -> int:
     return found.present_bits | found.gone_bits << len(words.SYMPTOMS)
 
 
+def _context_bits(text: str) -> int:
+    found = context.parse(text)
+    return found.bits if found else words.NOT_RECORDED
+
+
+def _checked_lot(text: str) -> int:
+    bounds = ranges("lot")
+    if not lots_of(text) or max(map(len, lots_of(text))) > bounds.number("longest"):
+        raise refuse("lot", text, bounds.text("allowed"), bounds.text("why"))
+    return 0
+
+
+def lots_of(text: str) -> list[str]:
+    """Return the lots of one cell, without outer blanks, in lower case."""
+    return [one.strip().lower() for one in text.split("+") if one.strip()]
+
+
 # Tidy column -> reader. Person, eye and date are always needed; acuity is read with its notation.
 READERS: Mapping[str, Reader] = {
     "eye": closed(words.SIDES, "eye"),
@@ -103,7 +120,24 @@ READERS: Mapping[str, Reader] = {
     "due_date": day,
     "symptoms": _symptom_bits,
     "contact": closed(("no", "yes"), "contact"),
+    "lot": _checked_lot,
+    "treatment_planned": closed(("no", "yes"), "treatment planned"),
+    "context": _context_bits,
+    "systolic_mmhg": blood.systolic,
+    "diastolic_mmhg": blood.diastolic,
+    "total_protein_g_dl": blood.protein_tenths,
 }
+NUMBERS = (
+    "cst_um",
+    "iop_mmhg",
+    "iop_after_mmhg",
+    "birth_year",
+    "due_date",
+    "systolic_mmhg",
+    "diastolic_mmhg",
+    "total_protein_g_dl",
+)
+"""Columns of numbers, blank as ``MISSING``; the others hold codes."""
 NEEDED = ("person", "eye", "date")
 TIDY_COLUMNS = (
     "person",
@@ -134,4 +168,10 @@ TIDY_COLUMNS = (
     "due_date",
     "symptoms",
     "contact",
+    "lot",
+    "treatment_planned",
+    "context",
+    "systolic_mmhg",
+    "diastolic_mmhg",
+    "total_protein_g_dl",
 )

@@ -10,11 +10,11 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from trends import carried, words
-from trends.cells import NEEDED, READERS
+from trends.cells import NEEDED, NUMBERS, READERS
 from trends.errors import EbblineError, FrameRefused
-from trends.measures import acuity, agents
+from trends.measures import acuity, agents, context
 from trends.tables import Table, table_of, table_of_rows
-from trends.visits import MISSING, Ints, Visits, coded, sorted_visits
+from trends.visits import MISSING, Ints, Visits, coded, day_number, sorted_visits
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -42,12 +42,9 @@ def _visits(table: Table, *, one_scanner_assumed: bool = False) -> Visits:
         )
         table.refuse(blank, column, "", "a value in each row", "every visit needs it")
     read_in = {
-        column: table.numbers(column, words.NOT_RECORDED, reader)
+        column: table.numbers(column, MISSING if column in NUMBERS else words.NOT_RECORDED, reader)
         for column, reader in READERS.items()
-        if column not in {"cst_um", "iop_mmhg", "iop_after_mmhg", "birth_year", "due_date"}
     }
-    for column in ("cst_um", "iop_mmhg", "iop_after_mmhg", "birth_year", "due_date"):
-        read_in[column] = table.numbers(column, MISSING, READERS[column])
     columns, lists = _columns(table, read_in)
     carried.check_rows(table, read_in, columns)
     if table.refused:
@@ -76,6 +73,7 @@ def _columns(
     scanner, scanners = coded(table.text_of("scanner"))
     agent_texts = [_quiet_agent(text) for text in table.texts["agent"]]
     agent, agent_list = coded(agent_texts, known=("none",))
+    lot, lots = coded(table.text_of("lot"))
     columns = {
         "kind": np.where(read_in["contact"] == 1, contact, read_in["kind"]),
         "scanner": scanner,
@@ -87,6 +85,9 @@ def _columns(
         "iop_after_tenths": read_in["iop_after_mmhg"],
         "due_day": read_in["due_date"],
         "laser": read_in["laser"],
+        "lots": lot,
+        "protein_tenths": read_in["total_protein_g_dl"],
+        **_context_days(table),
         "entry": carried.entry_order(read_in),
         **_acuities(table, read_in),
     }
@@ -103,9 +104,27 @@ def _columns(
         "cause",
         "status",
         "regimen",
+        "treatment_planned",
+        "context",
+        "systolic_mmhg",
+        "diastolic_mmhg",
     ):
         columns[name] = read_in[name]
-    return columns, {"scanner": scanners, "agents": agent_list, "regimen": words.REGIMENS}
+    lists = {"scanner": scanners, "agents": agent_list, "regimen": words.REGIMENS, "lots": lots}
+    return columns, lists
+
+
+def _context_days(table: Table) -> dict[str, Ints]:
+    """Return the days of a stroke and a heart attack as written, of cells that can be read."""
+    out = {f"{name}_day": np.full(len(table.texts["context"]), MISSING) for name in context.DATED}
+    for place, text in enumerate(table.texts["context"]):
+        try:
+            found = context.parse(text)
+        except EbblineError:
+            continue
+        for name, day in found.days.items() if found else ():
+            out[f"{name}_day"][place] = day_number(day)
+    return {name: days[table.codes["context"]] for name, days in out.items()}
 
 
 def _quiet_agent(text: str) -> str:

@@ -39,6 +39,9 @@ MISSABLE = (
     "laser",
     "regimen",
     "hist_treatments",
+    "lot",
+    "treatment_planned",
+    "context",
 )
 
 

@@ -75,6 +75,14 @@ COLUMNS: dict[str, int] = {
     "breaks": 0,
     "scanner_assumed": 0,
     "decided": 0,
+    "lots": words.NOT_RECORDED,
+    "treatment_planned": words.NOT_RECORDED,
+    "context": words.NOT_RECORDED,
+    "stroke_day": MISSING,
+    "heart_attack_day": MISSING,
+    "systolic_mmhg": MISSING,
+    "diastolic_mmhg": MISSING,
+    "protein_tenths": MISSING,
 }
 
 

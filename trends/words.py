@@ -39,6 +39,8 @@ SYMPTOMS = (
     "light_sensitivity",
     "no_perception",
 )
+# What bears on a treatment of a person, a bit each; an allergy is to a drug or an antiseptic.
+CONTEXT = ("pregnancy", "stroke", "heart_attack", "allergy")
 # Ordered: a step down the list of categories is a step of vision; "chart" is every measured line.
 OFF_CHART = ("NLP", "LP", "HM", "CF")
 ON_CHART = len(OFF_CHART)
