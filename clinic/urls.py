@@ -10,6 +10,7 @@ from clinic.views import (
     limit_sets,
     people,
     prints,
+    sources,
     visit_sheet,
 )
 
@@ -20,6 +21,7 @@ SITE_ROUTES: list[URLPattern | URLResolver] = [
     *following.routes,
     *limit_sets.routes,
     *prints.routes,
+    *sources.routes,
     *visit_sheet.routes,
     *people.routes,
     *eye_course.routes,

@@ -4,6 +4,7 @@ import textwrap
 from collections.abc import Container, Iterable, Iterator
 
 from trends.parts import EYES, PARTS, QUIET_WORDS, Part, nine_parts, quiet_parts, said, source_words
+from trends.saying import column
 from trends.sources import Sourced, limit_words
 from trends.verdict import LIMIT_NOT_REACHED, OUTCOME_WORDS
 from trends.wording import VerdictRow
@@ -97,7 +98,7 @@ def _facts(one: Sourced) -> Iterator[str]:
     if one.leans:
         yield from labelled("Leans", one.leans)
     if one.needs:
-        yield from labelled("Needs", ", ".join(one.needs))
+        yield from labelled("Needs", ", ".join(map(column, one.needs)))
     if one.always_on:
         yield from labelled("Always on", "runs before any limit set is adopted, can't be off")
     numbers = tuple(limit_words(each, one.cites) for each in one.limits)

@@ -30,6 +30,7 @@ NAVIGATION = (
     ("contacts", "Contacts"),
     ("enrol", "Enrol"),
     ("limit_set", "Limits"),
+    ("sources", "Sources"),
 )
 
 
