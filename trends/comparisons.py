@@ -4,7 +4,7 @@ from functools import cached_property
 
 import numpy as np
 
-from trends import words
+from trends import fellow, words
 from trends.comparable import NONE, Previous, last_before, previous
 from trends.visits import MISSING, Bools, Ints, Visits
 
@@ -65,6 +65,11 @@ class Comparisons:
         """Kinds at which a blank measurement couldn't be told; elsewhere it doesn't apply."""
         skip = [words.KINDS.index("treatment_only"), words.KINDS.index("contact")]
         return ~np.isin(self.v.kind, skip)
+
+    @cached_property
+    def fellow(self) -> fellow.Pairs:
+        """Each row with the fellow eye's rows of the same day."""
+        return fellow.pairs(self.v)
 
     @cached_property
     def followed(self) -> Bools:

@@ -37,11 +37,19 @@ RAISED: dict[str, tuple[dict[str, str], dict[str, str]]] = {
     "pressure_after": ({}, {"agent": "aflibercept", "iop_after_mmhg": "30"}),
     "alarm_symptoms": ({}, {"symptoms": "pain"}),
     "too_soon": ({"agent": "aflibercept"}, {"agent": "aflibercept"}),
+    "same_day_both_implants": ({}, {"agent": "dexamethasone"}),
+    "same_lot_both_eyes": ({}, {"agent": "aflibercept", "lot": "A1"}),
+    "treatment_context": ({}, {"treatment_planned": "yes", "context": "pregnancy"}),
     "scanner_changed": ({"cst_um": "300", **SCAN}, {"cst_um": "300", **SCAN, "scanner": "two"}),
     "acuity_method_changed": (
         {"acuity": "70", **LETTERS},
         {"acuity": "70", **LETTERS, "acuity_chart": "electronic_etdrs"},
     ),
+    "tonometer_changed": (
+        {"iop_mmhg": "14", "iop_method": "applanation"},
+        {"iop_mmhg": "14", "iop_method": "rebound"},
+    ),
+    "same_in_both_eyes": ({}, {"cst_um": "312", **SCAN}),
     "poor_scan": ({"cst_um": "300"}, {"cst_um": "300", "scan_quality": "poor"}),
     # Nothing after the second visit until the day asked: due, late, away, without a next plan.
     "did_not_come": ({}, {"due_date": "2026-03-01", "agent": "none"}),
@@ -50,6 +58,12 @@ RAISED: dict[str, tuple[dict[str, str], dict[str, str]]] = {
     "away": ({}, {"due_date": "2026-03-01", "agent": "none"}),
     "no_plan": ({}, {"agent": "none"}),
     "undecided": ({}, {"cst_um": "300"}),
+}
+# The fellow eye's cells at the second visit, where a rule looks at both eyes.
+FELLOW = {
+    "same_day_both_implants": {"agent": "fluocinolone"},
+    "same_lot_both_eyes": {"agent": "aflibercept", "lot": "a1"},
+    "same_in_both_eyes": {"cst_um": "312", **SCAN},
 }
 # Raised ones that show the clinic's own emergency text in place of options.
 EMERGENCIES = {"off_chart_step", "pressure", "alarm_symptoms"}
@@ -61,6 +75,8 @@ ALWAYS = {"off_chart_step", "pressure", "alarm_symptoms", "pressure_after", "too
 def second_visit(rule: str, **also: str) -> VerdictRow:
     first, second = RAISED[rule]
     rows = [{"date": "2026-01-01", **first}, {"date": "2026-01-20", **second, **also}]
+    if rule in FELLOW:
+        rows.append({"date": "2026-01-20", "eye": "L", **FELLOW[rule]})
     usual = {"person": "p", "eye": "R"}
     visits = Visits.from_frame(pd.DataFrame([{**usual, **row} for row in rows]).fillna(""))
     reviewed = review(visits, shipped("general"), AS_OF)
@@ -128,7 +144,13 @@ def test_a_scan_absent_in_an_eye_scanned_before_is_raised(kind: str) -> None:
 
 
 # A treatment not recorded at a visit for treatment can't be told; nothing is measured there.
-TREATING = {"too_soon", "pressure_after"}
+TREATING = {
+    "too_soon",
+    "pressure_after",
+    "same_day_both_implants",
+    "same_lot_both_eyes",
+    "treatment_context",
+}
 
 
 @pytest.mark.parametrize("rule", VISIT_RULES)

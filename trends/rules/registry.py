@@ -18,10 +18,15 @@ from trends.rules import (
     poor_scan,
     pressure,
     pressure_after,
+    same_day_both_implants,
+    same_in_both_eyes,
+    same_lot_both_eyes,
     scanner_changed,
     thickening,
     thickening_possible,
+    tonometer_changed,
     too_soon,
+    treatment_context,
     undecided,
 )
 
@@ -37,8 +42,13 @@ VISIT_RULES: tuple[ModuleType, ...] = (
     pressure_after,
     alarm_symptoms,
     too_soon,
+    same_day_both_implants,
+    same_lot_both_eyes,
+    treatment_context,
     scanner_changed,
     acuity_method_changed,
+    tonometer_changed,
+    same_in_both_eyes,
     poor_scan,
 )
 STANDING_RULES: tuple[ModuleType, ...] = (
