@@ -172,7 +172,8 @@ def describe_lateness(v: Visits, found: Judged, eye: int, limits: Table, name: s
     if past < 0:
         fact = f"due {date_words(due)}, in {days_words(-past)}"
     sentence = f"{who}: {fact}" + (f" ({booking})" if booking else "")
-    arithmetic = [f"{date_words(facts.today)} - {date_words(due)} = {days_words(past)}; {limit}"]
+    gap = f"{date_words(facts.today)} − {date_words(due)} = {days_words(past)}"
+    arithmetic = [f"{gap}; limit: {limit}"]
     return described(sentence, [value("due date", due)], arithmetic, limit)
 
 

@@ -5,7 +5,7 @@ from typing import Any
 import numpy as np
 
 from trends import words
-from trends.measures import pressure, thickness
+from trends.measures import agents, pressure, thickness
 from trends.visits import MISSING, Visits, day_date
 
 MONTHS_OLD_AFTER_DAYS = 183
@@ -89,11 +89,16 @@ def _cst(v: Visits, row: int) -> tuple[str, str, str]:
     return "CST", str(int(v.cst_um[row])), method
 
 
+def chart_words(code: int) -> str:
+    """Return a chart of the closed list in words."""
+    return f"{words.CHARTS[code].replace('_', ' ').replace('etdrs', 'ETDRS')} chart"
+
+
 def _chart(v: Visits, row: int) -> str:
     code = int(v.acuity_scale[row])
     if not 0 <= code < len(words.CHARTS):
         return "chart not recorded"
-    return f"{words.CHARTS[code].replace('_', ' ').replace('etdrs', 'ETDRS')} chart"
+    return chart_words(code)
 
 
 def _acuity(v: Visits, row: int) -> tuple[str, str, str]:
@@ -159,11 +164,18 @@ def own_value(v: Visits, row: int, what: str, shown: str, unit: str, method: str
     }
 
 
+def given(v: Visits, row: int) -> str:
+    """Return what was given at a row, in words."""
+    said = v.text("agents", row)
+    return "nothing given" if said == agents.NOTHING else said or "treatment not recorded"
+
+
 def treatment_value(v: Visits, row: int) -> list[dict[str, Any]]:
     """Return what was given at a row as a value; nothing where there is no row."""
     if row < 0:
         return []
-    return [own_value(v, row, "treatment", v.text("agents", row) or "not recorded", "", "given")]
+    method = "given" if int(v.given[row]) == 1 else ""
+    return [own_value(v, row, "treatment", given(v, row), "", method)]
 
 
 def baseline_values(v: Visits, rows: list[int]) -> list[dict[str, Any]]:

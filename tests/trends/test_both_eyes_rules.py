@@ -216,9 +216,9 @@ def test_the_event_stands_in_the_sentence_with_its_days() -> None:
     # 2 January to 2 March 2026: 29 more days of January, 28 of February, 2 of March = 59.
     assert one.rank == "weigh_today" and one.working
     assert one.sentence == (
-        "Right eye: a treatment planned on 2 March 2026; stroke on 2 January 2026, allergy"
+        "Right eye: treatment planned on 2 March 2026; stroke on 2 January 2026, allergy"
     )
-    assert one.working["arithmetic"] == ["2026-03-02 − 2 January 2026 = 59 days"]
+    assert one.working["arithmetic"] == ["2 March 2026 − 2 January 2026 = 59 days"]
 
 
 @pytest.mark.parametrize(

@@ -94,3 +94,45 @@ def test_a_visit_not_decided_asks_for_a_record_and_not_for_a_call() -> None:
     assert one.outcome == "raised" and one.working is not None
     assert one.working["rule"]["limit"] == "1 day since the visit, reached"
     assert one.working["options"][0] == "record what was decided or given"
+
+
+@pytest.mark.parametrize(
+    "quality,said",
+    [
+        ("good", "Right eye: scan said to be good"),
+        ("", "Right eye: scan taken, its quality not recorded"),
+        ("poor", "Right eye: scan said to be poor; repeat the scan before the patient leaves"),
+    ],
+)
+def test_a_scan_is_called_poor_only_where_somebody_said_so(quality: str, said: str) -> None:
+    one = last("poor_scan", {"cst_um": "300", "scan_quality": quality, "oct_class": "SD-BM"})
+    assert one.sentence == said
+    assert one.outcome == ("raised" if quality == "poor" else "limit_not_reached")
+
+
+def test_nothing_given_is_said_in_words() -> None:
+    one = last("pressure_after", {"agent": "none"})
+    assert one.sentence == "Right eye: nothing given on 1 January 2026, no IOP after it"
+    assert (
+        last("too_soon", {"agent": "none"}).sentence == "Right eye: nothing given on 1 January 2026"
+    )
+
+
+def test_a_pressure_after_treatment_is_set_against_its_limit() -> None:
+    high = last("pressure_after", {"agent": "aflibercept", "iop_after_mmhg": "34"}).working
+    low = last("pressure_after", {"agent": "aflibercept", "iop_after_mmhg": "29.5"}).working
+    assert high and low
+    assert (high["arithmetic"], low["arithmetic"]) == (["34 ≥ 30 mmHg"], ["29.5 < 30 mmHg"])
+
+
+def test_charts_are_named_as_clinics_name_them() -> None:
+    one = last("acuity_method_changed", {"acuity": "70", **LETTERS}, {"acuity": "70", **LETTERS})
+    assert "acuity by ETDRS chart" in one.sentence
+
+
+def test_a_context_nobody_asked_about_is_not_called_nothing() -> None:
+    one = last("treatment_context", {"treatment_planned": "yes"})
+    assert one.outcome == "could_not_tell"
+    assert one.sentence.startswith("Right eye: treatment planned on 1 January 2026; nobody asked")
+    asked = last("treatment_context", {"treatment_planned": "yes", "context": "none"})
+    assert asked.sentence.endswith("nothing told that counts")

@@ -91,7 +91,9 @@ def test_the_sentence_of_a_late_eye_states_dates_and_days() -> None:
     late = registry.by_id()["late"]
     told = late.describe(found.visits, found.judged["late"], 0, shipped("general").rule("late"))
     assert told.sentence == "Right eye: due 1 March 2025, not seen since; 15 days past due"
-    assert told.arithmetic == ["16 March 2025 - 1 March 2025 = 15 days; 14 days past due, exceeded"]
+    assert told.arithmetic == [
+        "16 March 2025 − 1 March 2025 = 15 days; limit: 14 days past due, exceeded"
+    ]
 
 
 def test_a_booking_is_named_beside_lateness_but_does_not_reset_it() -> None:

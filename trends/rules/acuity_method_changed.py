@@ -50,7 +50,7 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
 
 def _method(v: Visits, row: int) -> str:
     code, correction = int(chart(v)[row]), int(v.acuity_correction[row])
-    name = words.CHARTS[code].replace("_", " ") if code >= 0 else "chart not recorded"
+    name = saying.chart_words(code) if code >= 0 else "chart not recorded"
     with_what = words.CORRECTIONS[correction] if correction >= 0 else "correction not recorded"
     return f"{name}, {with_what}"
 

@@ -58,5 +58,6 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
         return described(f"{who}: no attended visit is in the log", [], [], limit)
     day, since = int(v.day[facts.last[row]]), int(facts.days_since[row])
     sentence = f"{who}: last seen {date_words(day)}, {days_words(since)} ago"
-    arithmetic = [f"{date_words(facts.today)} - {date_words(day)} = {days_words(since)}; {limit}"]
+    gap = f"{date_words(facts.today)} − {date_words(day)} = {days_words(since)}"
+    arithmetic = [f"{gap}; limit: {limit}"]
     return described(sentence, [value("last attended visit", day)], arithmetic, limit)

@@ -57,10 +57,14 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
 def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     """Put one row into words."""
     ref, eye = int(judged.ref[row]), saying.eye(v, row)
-    if int(v.cst_um[row]) == MISSING and int(v.scan_quality[row]) != 0:
+    quality = int(v.scan_quality[row])
+    if quality == words.QUALITIES.index("poor"):
+        sentence = f"{eye}: scan said to be poor; repeat the scan before the patient leaves"
+    elif int(v.cst_um[row]) == MISSING:
         sentence = f"{eye}: no scan on {saying.day(v, row)}"
     else:
-        sentence = f"{eye}: scan said to be poor; repeat the scan before the patient leaves"
+        said = "said to be good" if quality >= 0 else "taken, its quality not recorded"
+        sentence = f"{eye}: scan {said}"
     last = f", last scan on {saying.day(v, ref)}" if ref >= 0 else ""
     return Description(
         sentence=sentence + last,

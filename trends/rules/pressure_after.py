@@ -56,7 +56,7 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
 def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     """Put one row into words."""
     eye, which = saying.eye(v, row), int(judged.part[row])
-    given = v.text("agents", row) or "treatment not recorded"
+    given = saying.given(v, row)
     after = int(v.iop_after_tenths[row])
     level = f"IOP {shown(after)} mmHg after treatment" if after != MISSING else "no IOP after it"
     sentence = f"{eye}: {given} on {saying.day(v, row)}, {level}"
@@ -67,6 +67,7 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     return Description(
         sentence=sentence,
         values=saying.treatment_value(v, row) + _after_values(v, row),
+        arithmetic=_arithmetic(after, limits),
         limit=_limit_words(limits),
         noise="a short rise after an injection is expected; it is seen within 60 minutes",
         options=[]
@@ -89,6 +90,13 @@ def _after_values(v: Visits, row: int) -> list[dict[str, Any]]:
     if int(v.symptoms_present[row]) & NO_PERCEPTION:
         found.append(saying.own_value(v, row, "symptoms", "no perception", "", "asked"))
     return found
+
+
+def _arithmetic(after: int, limits: Table) -> list[str]:
+    if after == MISSING or limits.floor_only:
+        return []
+    limit = limits.number("after_tenths")
+    return [f"{shown(after)} {'≥' if after >= limit else '<'} {shown(limit)} mmHg"]
 
 
 def _limit_words(limits: Table) -> str:

@@ -61,7 +61,7 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
 def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     """Put one row into words."""
     ref, eye = int(judged.ref[row]), saying.eye(v, row)
-    given = v.text("agents", row) or "treatment not recorded"
+    given = saying.given(v, row)
     sentence = f"{eye}: {given} on {saying.day(v, row)}"
     arithmetic = []
     last, what = _last_treatment(v, ref, row)

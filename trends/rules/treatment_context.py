@@ -66,13 +66,15 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
 def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     """Put one row into words."""
     told = _told(v, int(counted(v, limits)[row]), row)
-    facts = ", ".join(text for text, _day in told) or "nothing recorded that counts"
+    nothing = "nothing told that counts" if int(v.context[row]) >= 0 else "nobody asked yet"
+    facts = ", ".join(text for text, _day in told) or nothing
+    treated = f"treatment {_treatment(v, row)} on {saying.day(v, row)}"
     return Description(
-        sentence=f"{saying.eye(v, row)}: {_treatment(v, row)} on {saying.day(v, row)}; {facts}",
+        sentence=f"{saying.eye(v, row)}: {treated}; {facts}",
         values=[saying.own_value(v, row, "treatment", _treatment(v, row), "", "recorded")]
         + [saying.own_value(v, row, "context", text, "", "as told") for text, _day in told],
         arithmetic=[
-            f"{saying.iso(v, row)} − {saying.date_words(day)} = {int(v.day[row]) - day} days"
+            f"{saying.day(v, row)} − {saying.date_words(day)} = {int(v.day[row]) - day} days"
             for _text, day in told
             if day != MISSING
         ],
@@ -90,9 +92,9 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
 
 def _treatment(v: Visits, row: int) -> str:
     if int(v.given[row]) == 1:
-        return f"{v.text('agents', row)} given"
+        return f"with {v.text('agents', row)}"
     planned = int(v.treatment_planned[row])
-    return {1: "a treatment planned", 0: "no treatment planned"}.get(planned, "plan not recorded")
+    return {1: "planned", 0: "not planned"}.get(planned, "plan not recorded")
 
 
 def _told(v: Visits, bits: int, row: int) -> list[tuple[str, int]]:

@@ -85,7 +85,8 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
             f"{who}: measured {date_words(day)}, {days_words(since)} ago; nothing decided or "
             "recorded as given"
         )
-    arithmetic = [f"{date_words(facts.today)} - {date_words(day)} = {days_words(since)}; {limit}"]
+    gap = f"{date_words(facts.today)} − {date_words(day)} = {days_words(since)}"
+    arithmetic = [f"{gap}; limit: {limit}"]
     return _described(sentence, [value("last attended visit", day)], arithmetic, limit)
 
 
