@@ -10,14 +10,14 @@ from typing import Any, NamedTuple
 import numpy as np
 
 from trends import ENGINE_VERSION, saying, words
-from trends.citations import citation
+from trends.cited import class_of, sources
 from trends.limits import LimitSet, Table, table_for
 from trends.regimens import registry as regimens
 from trends.review import Reviewed
 from trends.rules import registry
 from trends.ruling import Description, Judged, columns_of
 from trends.verdict import COULD_NOT_TELL, OUTCOME_WORDS, RAISED, RANK_WORDS, STILL
-from trends.visits import day_date
+from trends.visits import Visits, day_date
 
 WORKED = (RAISED, STILL, COULD_NOT_TELL)
 FLOOR_NAME = "floor rules only"
@@ -46,23 +46,6 @@ class VerdictRow:
 def set_names(limits: LimitSet | None) -> tuple[str, str]:
     """Return name and version of the set in force."""
     return (limits.name, limits.version) if limits is not None else (FLOOR_NAME, ENGINE_VERSION)
-
-
-def sources(keys: Iterable[str], table: Table | None) -> list[dict[str, Any]]:
-    """Return every source of a rule, with whether a number of it is from memory."""
-    entries = list(table.entries.values()) if table is not None else []
-    from_memory = {entry.cite for entry in entries if entry.memory}
-    used = dict.fromkeys((*keys, *(entry.cite for entry in entries)))
-    return [
-        {
-            "key": key,
-            "text": citation(key).text,
-            "population": citation(key).population,
-            "strength": citation(key).strength,
-            "memory": key in from_memory,
-        }
-        for key in used
-    ]
 
 
 def assumptions(reviewed: Reviewed, row: int) -> list[str]:
@@ -125,22 +108,29 @@ def rule_rows(
     """Yield the verdicts of one rule at chosen rows (eyes, for a standing rule)."""
     module = registry.by_id()[rule]
     table = table_for(reviewed.limits, rule, is_floor=module.INFO.floor)
-    ruled = Ruled(module, table, reviewed.judged[rule], sources(module.INFO.cites, table))
+    ruled = Ruled(module, table, reviewed.judged[rule], {})
     for row in chosen:
         yield _rule_row(reviewed, ruled, int(row), all_working)
 
 
 class Ruled(NamedTuple):
-    """One rule ready to be worded: its module, its entries, its outcomes, its sources."""
+    """One rule ready to be worded: its module, its entries, its outcomes, sources by class."""
 
     module: Any
     table: Table | None
     judged: Judged
-    cited: list[dict[str, Any]]
+    cited: dict[str, list[dict[str, Any]]]
+
+    def sources_at(self, v: Visits, row: int) -> list[dict[str, Any]]:
+        """Return the sources of a verdict at a row, worked out once a class of scan."""
+        klass = "" if self.module.INFO.shape == "standing" else class_of(v, row)
+        if klass not in self.cited:
+            self.cited[klass] = sources(self.module.INFO.cites, self.table, klass)
+        return self.cited[klass]
 
 
 def _rule_row(reviewed: Reviewed, ruled: Ruled, row: int, all_working: bool) -> VerdictRow:
-    module, table, judged, cited = ruled
+    module, table, judged, _cited = ruled
     v, info = reviewed.visits, module.INFO
     standing = info.shape == "standing"
     first = int(v.offsets[row]) if standing else row
@@ -172,7 +162,9 @@ def _rule_row(reviewed: Reviewed, ruled: Ruled, row: int, all_working: bool) -> 
         reading="",
         limit_set=name,
         limit_set_version=version,
-        working=working(info, said, cited, reviewed, facts) if worked else None,
+        working=working(info, said, ruled.sources_at(v, first), reviewed, facts)
+        if worked
+        else None,
     )
 
 
@@ -197,10 +189,15 @@ def regimen_rows(
     wanted = None if chosen is None else set(chosen)
     readings = spoken.readings()
     table = reviewed.limits.regimen(regimen) if reviewed.limits is not None else None
-    cited = sources(regimens.by_id()[regimen].INFO.cites, table)
+    cites = regimens.by_id()[regimen].INFO.cites
+    cited = {
+        klass: sources(cites, table, klass)
+        for klass in {class_of(reviewed.visits, row) for row in spoken.rows.tolist()}
+    }
     for place, row in enumerate(spoken.rows.tolist()):
         if wanted is None or row in wanted:
-            yield _regimen_row(reviewed, regimen, place, readings[place], cited)
+            at = class_of(reviewed.visits, row)
+            yield _regimen_row(reviewed, regimen, place, readings[place], cited[at])
 
 
 def _regimen_row(
