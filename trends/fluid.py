@@ -6,6 +6,7 @@ from functools import cached_property
 import numpy as np
 
 from trends import saying, words
+from trends.comparable import Previous
 from trends.comparisons import Comparisons
 from trends.limits import Table
 from trends.ruling import Description, Judged, bit
@@ -23,11 +24,20 @@ def by_class(limits: Table, prefix: str, classes: Ints, absent: int) -> Ints:
 
 @dataclass(frozen=True)
 class Rise:
-    """The rise of every scan against its comparable one; columns (n,)."""
+    """The rise of every scan against its comparable one; columns (n,).
+
+    ``against`` compares with other references than the last comparable scan.
+    """
 
     v: Visits
     c: Comparisons
     limits: Table
+    against: Previous | None = None
+
+    @property
+    def reference(self) -> Previous:
+        """What each scan is compared with."""
+        return self.against if self.against is not None else self.c.cst
 
     @cached_property
     def classes(self) -> Ints:
@@ -48,12 +58,12 @@ class Rise:
     @cached_property
     def before(self) -> Ints:
         """The reference thickness; MISSING where there is none."""
-        return np.where(self.c.cst.found, self.v.cst_um[self.c.cst.ref], MISSING)
+        return np.where(self.reference.found, self.v.cst_um[self.reference.ref], MISSING)
 
     @cached_property
     def change(self) -> Ints:
         """µm since the reference; 0 where it can't be told."""
-        both = self.c.cst_given & self.c.cst.found
+        both = self.c.cst_given & self.reference.found
         return np.where(both, self.v.cst_um - self.before, 0)
 
     @cached_property
@@ -65,7 +75,7 @@ class Rise:
     def judgeable(self) -> Bools:
         """Measured, with a known class that has a limit and something to compare with."""
         has_limit = (self.classes >= 0) & (self.permille != MISSING)
-        return np.asarray(self.c.cst_given & has_limit & self.c.cst.found)
+        return np.asarray(self.c.cst_given & has_limit & self.reference.found)
 
     @cached_property
     def percent_met(self) -> Bools:
@@ -94,14 +104,14 @@ class Rise:
 
     def _scan_missing(self, no_class: Bools, poor: Bools) -> Ints:
         given = self.c.cst_given
-        not_comparable = given & self.c.cst.not_comparable
+        not_comparable = given & self.reference.not_comparable
         out = np.where(no_class | not_comparable, bit("oct_class"), 0)
         return np.asarray(out | np.where(poor & given, bit("scan_quality"), 0), dtype=np.int64)
 
 
-def rise(v: Visits, c: Comparisons, limits: Table) -> Rise:
+def rise(v: Visits, c: Comparisons, limits: Table, against: Previous | None = None) -> Rise:
     """Return the rise of every scan."""
-    return Rise(v, c, limits)
+    return Rise(v, c, limits, against)
 
 
 def class_name(v: Visits, row: int) -> str:

@@ -22,6 +22,11 @@ LETTERS = {"acuity_notation": "etdrs_letters", "acuity_chart": "etdrs"}
 RAISED: dict[str, tuple[dict[str, str], dict[str, str]]] = {
     "thickening": ({"cst_um": "300", **SCAN}, {"cst_um": "330", **SCAN}),
     "thickening_possible": ({"cst_um": "400", **SCAN}, {"cst_um": "430", **SCAN}),
+    "rise_since_withholding": (
+        {"cst_um": "300", "agent": "none", **SCAN},
+        {"cst_um": "330", "agent": "none", **SCAN},
+    ),
+    "drift": ({"cst_um": "300", **SCAN}, {"cst_um": "350", **SCAN}),
     "crossed_limit": (
         {"cst_um": "280", "sex": "f", **SCAN},
         {"cst_um": "305", "sex": "f", **SCAN},
@@ -65,6 +70,11 @@ FELLOW = {
     "same_lot_both_eyes": {"agent": "aflibercept", "lot": "a1"},
     "same_in_both_eyes": {"cst_um": "312", **SCAN},
 }
+# Earlier visits of the eye, where two don't make a history.
+BEFORE: dict[str, list[dict[str, str]]] = {
+    "rise_since_withholding": [{"date": "2025-12-01", "agent": "aflibercept"}],
+    "drift": [{"date": "2025-12-01", "cst_um": "300", **SCAN}],
+}
 # Raised ones that show the clinic's own emergency text in place of options.
 EMERGENCIES = {"off_chart_step", "pressure", "alarm_symptoms"}
 STOPPED = ["stopped", "care_elsewhere", "not_followed"]
@@ -74,13 +84,14 @@ ALWAYS = {"off_chart_step", "pressure", "alarm_symptoms", "pressure_after", "too
 
 def second_visit(rule: str, **also: str) -> VerdictRow:
     first, second = RAISED[rule]
-    rows = [{"date": "2026-01-01", **first}, {"date": "2026-01-20", **second, **also}]
+    before = BEFORE.get(rule, [])
+    rows = [*before, {"date": "2026-01-01", **first}, {"date": "2026-01-20", **second, **also}]
     if rule in FELLOW:
         rows.append({"date": "2026-01-20", "eye": "L", **FELLOW[rule]})
     usual = {"person": "p", "eye": "R"}
     visits = Visits.from_frame(pd.DataFrame([{**usual, **row} for row in rows]).fillna(""))
     reviewed = review(visits, shipped("general"), AS_OF)
-    place = 1 if rule in VISIT_RULES else 0
+    place = len(before) + 1 if rule in VISIT_RULES else 0
     return next(rule_rows(reviewed, rule, [place], all_working=True))
 
 
@@ -164,6 +175,8 @@ def test_a_visit_without_measuring_needs_none(rule: str) -> None:
     "rule,date,value",
     [
         ("thickening", "2026-01-01", 300),
+        ("rise_since_withholding", "2026-01-01", 300),
+        ("drift", "2026-01-01", 300),
         ("crossed_limit", "2026-01-01", 280),
         ("fluid_back", "2026-01-01", "no"),
         ("letters_lost", "2026-01-01", "70 letters"),
