@@ -2,6 +2,7 @@
 
 import argparse
 import datetime as dt
+import os
 import sys
 from collections.abc import Iterator, Sequence
 from pathlib import Path
@@ -100,8 +101,13 @@ def run_sources(options: argparse.Namespace) -> int:
             return REFUSED
         print(f"rendered verdicts written to {options.verdicts}")
         return 0
-    for one in [known[options.rule]] if options.rule else known.values():
-        print(one.name if options.names else "\n".join(sourced(one)) + "\n" + "-" * WIDTH)
+    try:
+        for one in [known[options.rule]] if options.rule else known.values():
+            print(one.name if options.names else "\n".join(sourced(one)) + "\n" + "-" * WIDTH)
+        sys.stdout.flush()
+    except BrokenPipeError:
+        # A reader such as a pager was closed early; Python would complain once more at its end.
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
     return 0
 
 

@@ -1,5 +1,7 @@
 """Every number can be traced: source, citation and worked example of each rule, limit, formula."""
 
+import subprocess
+import sys
 import tomllib
 from collections.abc import Iterator, Mapping
 from pathlib import Path
@@ -196,3 +198,19 @@ def test_the_command_names_what_it_knows_when_asked_for_another(
     code, out, err = run(capsys, "--rule", "thickness")
     assert (code, out) == (2, "")
     assert err.startswith("--rule thickness: allowed: thickening, ")
+
+
+def test_a_reader_that_stops_early_gets_no_complaint() -> None:
+    told = subprocess.Popen(
+        [sys.executable, "-m", "trends", "sources"],
+        cwd=FOLDER.parent,
+        stdout=subprocess.PIPE,
+        stderr=subprocess.PIPE,
+        text=True,
+    )
+    assert told.stdout and told.stderr
+    with told, told.stdout, told.stderr:
+        assert told.stdout.readline().startswith("thickening: ")
+        told.stdout.close()
+        assert told.stderr.read() == ""
+    assert told.returncode == 0
