@@ -6,6 +6,7 @@ from clinic.views import (
     accounts,
     clinic_list,
     eye_course,
+    facts,
     following,
     limit_sets,
     people,
@@ -24,6 +25,7 @@ SITE_ROUTES: list[URLPattern | URLResolver] = [
     *sources.routes,
     *visit_sheet.routes,
     *people.routes,
+    *facts.routes,
     *eye_course.routes,
 ]
 

@@ -4,6 +4,7 @@ import datetime as dt
 from collections.abc import Mapping, Sequence
 from typing import Any
 
+from clinic.adapters.facts import fact_cells
 from clinic.adapters.records import Records
 from clinic.models import Patient, Treated
 from trends import words
@@ -32,6 +33,23 @@ def _agents(treated: dict[str, Any] | None, more: Mapping[int, list[str]]) -> st
         return "+".join(named)
     # Laser alone is no injection, as in a tidy file; given without a name is never "none".
     return "none" if treated["laser"] else "other"
+
+
+def _lots(treated: dict[str, Any] | None, more: Mapping[int, list[str]]) -> str:
+    if treated is None or treated["outcome"] != Treated.Outcome.GIVEN:
+        return ""
+    return "+".join(lot for lot in (treated["lot"], *more.get(treated["pk"], [])) if lot)
+
+
+def _planned(records: Records, eye: int, day: dt.date, *, given: bool) -> int:
+    """Return 1 where something was given, else what the last visit on an earlier day planned.
+
+    1 is a treatment, 0 a check only, -1 not said. Laser alone is no treatment the context is for.
+    """
+    if given:
+        return 1
+    earlier = [said for on, _entry, said in records.planned.get(eye, []) if on < day]
+    return earlier[-1] if earlier else words.NOT_RECORDED
 
 
 def _symptom_bits(text: str, perception: str) -> tuple[int, int, int]:
@@ -83,6 +101,7 @@ def cells_of(
     events = records.events.get(eye["pk"], [])
     told = (measured or {}).get("symptoms") or (contact or {}).get("symptoms") or ""
     present, gone, recorded = _symptom_bits(told, (treated or {}).get("perception_after", ""))
+    agents = _agents(treated, records.more)
     cells: dict[str, Any] = {
         "entry": visit["entry"],
         "kind": _code(words.KINDS, visit["kind"]),
@@ -93,7 +112,12 @@ def cells_of(
         "course": course.pk if course and course.regimen else words.NOT_RECORDED,
         "regimen": _code(words.REGIMENS, course.regimen if course else ""),
         "breaks": sum(1 for day, _pk in events if day <= visit["day"]),
-        "agents": _agents(treated, records.more),
+        "agents": agents,
+        "lots": _lots(treated, records.more_lots),
+        "treatment_planned": _planned(
+            records, eye["pk"], visit["day"], given=agents not in ("", "none")
+        ),
+        **fact_cells(records.facts.get(visit["patient_id"], []), eye["pk"], visit["day"]),
         "symptoms_present": present,
         "symptoms_gone": gone,
         "symptoms_recorded": recorded,

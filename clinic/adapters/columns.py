@@ -53,10 +53,10 @@ def _columns(
     columns: dict[str, Any] = {
         name: np.array([one.get(name, absent) for one in cells], dtype=np.int32)
         for name, absent in COLUMNS.items()
-        if name not in {"agents", "scanner", "grader"}
+        if name not in {"agents", "scanner", "grader", "lots"}
     }
     lists: dict[str, tuple[str, ...]] = {"regimen": words.REGIMENS}
-    for name, known in (("agents", ("none",)), ("scanner", ()), ("grader", ())):
+    for name, known in (("agents", ("none",)), ("scanner", ()), ("grader", ()), ("lots", ())):
         columns[name], lists[name] = coded((one[name] for one in cells), known)
     visits = sorted_visits(
         [patients[visit["patient_id"]].code for visit, _eye in rows],

@@ -9,6 +9,9 @@ import numpy as np
 from clinic.canonical import canonical_text
 from trends.visits import Visits
 
+OPEN = ("agents", "scanner", "grader", "lots")
+"""Columns whose codes stand for texts."""
+
 
 def _text(values: Mapping[str, Any]) -> str:
     """Return values as one text, the same for the same content."""
@@ -36,13 +39,13 @@ def digests(visits: Visits) -> list[str]:
             pending = []
         if person != last_person:
             running = hashlib.sha256()
-        texts = [visits.text(name, row) for name in ("agents", "scanner", "grader")]
+        texts = [visits.text(name, row) for name in OPEN]
         texts.append(course_texts.get(int(visits.course[row]), ""))
         texts.append(histories[int(visits.eye[row])])
         line = [int(visits.side[row]), day, table[row].tolist(), texts]
         # Codes of open lists depend on who else was loaded, those of courses on the order in which
         # they were stored; their texts stand for them.
-        for name in ("agents", "scanner", "grader", "course"):
+        for name in (*OPEN, "course"):
             line[2][names.index(name)] = 0
         running.update(repr(line).encode())
         pending.append(row)

@@ -4,8 +4,11 @@ import datetime as dt
 from collections import defaultdict
 from collections.abc import Collection, Iterable, Sequence
 from dataclasses import dataclass, field
+from functools import cached_property
 from typing import Any
 
+from clinic.adapters.facts import Standing
+from clinic.adapters.facts import standing as facts_standing
 from clinic.models import (
     ContactEntry,
     Course,
@@ -21,6 +24,7 @@ from clinic.models import (
     MoreTreatment,
     NextStep,
     Patient,
+    PersonFact,
     Treated,
     Visit,
 )
@@ -63,7 +67,16 @@ MEASURED = (
 )
 ACUITY = ("acuity", "acuity_notation", "acuity_chart", "acuity_correction", "acuity_distance")
 PRESSURE = ("iop_tenths", "iop_method")
-TREATED = ("outcome", "agent", "implant", "laser", "perception_after", "iop_after_tenths")
+TREATED = (
+    "outcome",
+    "agent",
+    "implant",
+    "lot",
+    "laser",
+    "perception_after",
+    "iop_after_tenths",
+)
+AHEAD = ("due_day", "planned_agent", "check_only")
 
 
 @dataclass
@@ -85,6 +98,19 @@ class Records:
     assumed: dict[int, tuple[str, ...]] = field(default_factory=dict)
     more_acuities: dict[int, list[dict[str, Any]]] = field(default_factory=dict)
     more_pressures: dict[int, list[dict[str, Any]]] = field(default_factory=dict)
+    more_lots: dict[int, list[str]] = field(default_factory=dict)
+    facts: dict[int, list[Standing]] = field(default_factory=dict)
+
+    @cached_property
+    def planned(self) -> dict[int, list[tuple[dt.date, int, int]]]:
+        """By eye: day and entry of each visit that planned ahead, and 1, 0 or -1 for treatment."""
+        visits = {visit["pk"]: visit for visit in self.visits}
+        found: dict[int, list[tuple[dt.date, int, int]]] = defaultdict(list)
+        for (visit_id, eye_id), row in self.ahead.items():
+            visit = visits[visit_id]
+            said = 1 if row["planned_agent"] else 0 if row["check_only"] else -1
+            found[eye_id].append((visit["day"], visit["entry"], said))
+        return {eye: sorted(rows) for eye, rows in found.items()}
 
 
 def _by_eye(rows: Iterable[Any]) -> dict[int, list[Any]]:
@@ -104,6 +130,8 @@ def read(patients: Sequence[Patient]) -> Records:
     histories: list[History] = []
     events: list[EyeEvent] = []
     more: dict[int, list[str]] = defaultdict(list)
+    lots: dict[int, list[str]] = defaultdict(list)
+    facts: dict[int, list[PersonFact]] = defaultdict(list)
     for start in range(0, len(ids), BATCH):
         some = ids[start : start + BATCH]
         found = Visit.objects.filter(patient_id__in=some).values(
@@ -118,8 +146,11 @@ def read(patients: Sequence[Patient]) -> Records:
         histories += History.objects.filter(**mine).order_by("rev")
         events += EyeEvent.objects.filter(**mine).order_by("day")
         given = MoreTreatment.objects.filter(treated__visit__patient_id__in=some)
-        for treated_id, agent in given.values_list("treated_id", "agent"):
+        for treated_id, agent, lot in given.values_list("treated_id", "agent", "lot"):
             more[treated_id].append(agent)
+            lots[treated_id].append(lot)
+        for fact in PersonFact.objects.filter(patient_id__in=some):
+            facts[fact.patient_id].append(fact)
     gone = {event.withdraws_id for event in events if event.withdraws_id}
     breaking: dict[int, list[tuple[dt.date, int]]] = defaultdict(list)
     for event in events:
@@ -132,11 +163,13 @@ def read(patients: Sequence[Patient]) -> Records:
         measured=_current(Measured, ids, *MEASURED),
         treated=_current(Treated, ids, *TREATED),
         decided=_current(Decided, ids),
-        ahead=_current(NextStep, ids, "due_day"),
+        ahead=_current(NextStep, ids, *AHEAD),
         contacts=_current(ContactEntry, ids, "symptoms"),
         more=more,
         more_acuities=_children(MoreAcuity, ids, *ACUITY),
         more_pressures=_children(MorePressure, ids, *PRESSURE),
+        more_lots=lots,
+        facts={patient: facts_standing(rows) for patient, rows in facts.items()},
         states=_by_eye(states),
         courses=_by_eye(courses),
         events=breaking,

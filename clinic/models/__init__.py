@@ -1,6 +1,7 @@
 """The tables, one file per concept. ``APPEND_ONLY`` lists those the triggers guard."""
 
 from clinic.models.append_only import AppendOnly, Revision
+from clinic.models.facts import PersonFact
 from clinic.models.intake import IntakeFile
 from clinic.models.ledger import Chain, Entry, Seal
 from clinic.models.limit_sets import Adoption, AdoptionConfirmed, LimitSetText
@@ -50,6 +51,7 @@ APPEND_ONLY = (
     EyeState,
     History,
     EyeEvent,
+    PersonFact,
     Course,
     Plan,
     Review,
@@ -93,6 +95,7 @@ __all__ = [
     "Note",
     "Patient",
     "PatientStatus",
+    "PersonFact",
     "Plan",
     "PostedPart",
     "RecordDone",

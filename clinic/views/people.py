@@ -24,9 +24,10 @@ from clinic.forms.person import (
     PlanForm,
     StateForm,
 )
-from clinic.models import Eye, PatientStatus
+from clinic.models import Eye, PatientStatus, PersonFact
 from clinic.selectors.access import CLINICIAN, WRITERS, Here, eye_for, patient_for, site_for
 from clinic.selectors.person import person_page
+from clinic.selectors.person_facts import fact_lines
 from clinic.services import patients as people
 from clinic.services.following import plan_record
 from trends.errors import EbblineError
@@ -99,6 +100,8 @@ def person(request: HttpRequest, slug: str, code: str) -> HttpResponse:
         "may_write": here.may(*WRITERS),
         "may_decide": here.may(CLINICIAN),
         "page": person_page(patient),
+        "facts": fact_lines(patient, timezone.localdate()),
+        "fact_kinds": PersonFact.Kind.choices,
     }
     return render(request, "people/person.html", context)
 

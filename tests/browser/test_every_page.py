@@ -13,6 +13,7 @@ from django.utils import timezone
 from playwright.sync_api import Browser, Page, Route, sync_playwright
 
 from clinic.models import Patient
+from clinic.services.facts import fact_record
 from clinic.services.limit_sets import adoption_propose, limit_set_seed
 from tests.clinic.at_the_desk import GIVEN, NOW, SEEN, Desk
 from tests.conftest import CHROMIUM, LOCAL
@@ -55,6 +56,11 @@ def patient(desk: Desk) -> Patient:
     worse = {**seen, "acuity": "58", "iop_tenths": 310}
     desk.save(patient, "measured", later, R=desk.scan(470, **worse), L=desk.scan(300, **seen))
     desk.call(patient, later + dt.timedelta(days=4), "pain+blurred")
+    facts = {"stroke": {"happened_on": day}, "kidney": {}}
+    for kind, values in facts.items():
+        told = {"day": later, "ask_again_by": later + dt.timedelta(weeks=2), **values}
+        who = {"by": desk.recorder, "at": NOW, "today": later}
+        fact_record(patient=patient, kind=kind, values=told, **who)
     today = timezone.localdate()
     for side in ("R", "L"):
         desk.plan(patient, side, due_day=today, booked_day=today, booked_time=dt.time(9, 30))
@@ -88,6 +94,8 @@ def addresses(patient: Patient) -> dict[str, str]:
         "status": f"{person}/right/status/",
         "course": f"{person}/right/course/",
         "plan": f"{person}/right/plan/",
+        "fact": f"{person}/fact/inflammation/",
+        "fact followed": f"{person}/facts/1/",
         "mistyped": f"{here}/find/?code=AAAAAAAAAA",
         "not found": f"{here}/nothing/",
     }

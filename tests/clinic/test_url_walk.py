@@ -9,7 +9,7 @@ from django.apps import apps
 from django.test import Client
 from django.urls import URLPattern, URLResolver, get_resolver
 
-from clinic.models import Eye, Membership, Patient, Site, User, Visit
+from clinic.models import Eye, Membership, Patient, PersonFact, Site, User, Visit
 
 pytestmark = pytest.mark.django_db
 AT = dt.datetime(2026, 3, 4, 9, 30, tzinfo=dt.UTC)
@@ -22,6 +22,8 @@ EXAMPLES = {
     "side": "right",
     "part": "measured",
     "rule": "thickening",
+    "what": "stroke",
+    "seq": "1",
 }
 
 
@@ -63,6 +65,7 @@ def harbour(code: str) -> Site:
     for side in ("R", "L"):
         Eye.objects.create(patient=patient, side=side)
     Visit.objects.create(patient=patient, day=AT.date(), kind="planned", at=AT, by=owner)
+    PersonFact.objects.create(patient=patient, seq=1, kind="stroke", day=AT.date(), at=AT, by=owner)
     return site
 
 
