@@ -9,7 +9,7 @@ from pathlib import Path
 
 from trends import ENGINE_VERSION, cells, limits, sources, summary, tidy
 from trends.citations import citation
-from trends.errors import EbblineError, FrameRefused, LimitSetRefused
+from trends.errors import EbblineError, FrameRefused
 from trends.notice import NOTICE
 from trends.printed import WIDTH, sourced
 from trends.review import review
@@ -177,11 +177,7 @@ RUN = {"review": run_review, "limit-sets": run_limit_sets, "sources": run_source
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command; returns the exit code."""
     options = parser().parse_args(arguments)
-    try:
-        return RUN[options.command](options)
-    except LimitSetRefused as error:
-        print(error, file=sys.stderr)
-        return REFUSED
+    return RUN[options.command](options)
 
 
 if __name__ == "__main__":

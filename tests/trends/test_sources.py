@@ -1,5 +1,6 @@
 """Every number can be traced: source, citation and worked example of each rule, limit, formula."""
 
+import io
 import subprocess
 import sys
 import tomllib
@@ -14,6 +15,7 @@ from trends import limits, worked
 from trends.__main__ import main
 from trends.citations import citations
 from trends.formulas import WORKERS, formulas
+from trends.measures.check_characters import fits
 from trends.parts import FROM_MEMORY
 from trends.regimens import registry as regimens
 from trends.rules import registry
@@ -214,3 +216,34 @@ def test_a_reader_that_stops_early_gets_no_complaint() -> None:
         told.stdout.close()
         assert told.stderr.read() == ""
     assert told.returncode == 0
+
+
+def test_a_closed_output_ends_the_command_without_an_error(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    with (tmp_path / "out").open("w") as file:
+
+        class Closed(io.StringIO):
+            def write(self, text: str) -> int:
+                raise BrokenPipeError
+
+            def fileno(self) -> int:
+                return file.fileno()
+
+        monkeypatch.setattr(sys, "stdout", Closed())
+        assert main(["sources", "--names"]) == 0
+    assert (tmp_path / "out").read_text() == ""
+
+
+def test_an_entry_says_whether_a_number_of_it_is_from_memory() -> None:
+    known = by_name()
+    # Time-domain 11 % is from memory; late is not; an applanation range is.
+    assert [known[name].memory for name in ("thickening", "late", "ranges.iop_tenths")] == [
+        True,
+        False,
+        True,
+    ]
+
+
+def test_a_whole_code_fits_and_a_changed_one_does_not() -> None:
+    assert fits("7K2M9QXA58") and not fits("7K2M9QXA59") and not fits("7K2M9QXA5!")
