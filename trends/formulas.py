@@ -8,8 +8,8 @@ from importlib import resources
 from typing import Any
 
 from trends.citations import Citation, citation
+from trends.measures import blood, logmar, osmosis, pressure, scoring
 from trends.measures import check_characters as checks
-from trends.measures import logmar, pressure, scoring
 from trends.measures.repeatability import repeatability
 
 Given = Mapping[str, Any]
@@ -103,6 +103,13 @@ def _perfusion(given: Given) -> list[str]:
     return [*_map(given), f"2/3 × {mean:.1f} − {iop} = {found:.1f} mmHg"]
 
 
+def _osmotic(given: Given) -> list[str]:
+    tenths = given["protein_tenths"]
+    shown = " + ".join(f"{one:.2f}" for one in osmosis.terms(tenths))
+    found = osmosis.colloid_osmotic(tenths)
+    return [f"C = {blood.protein_shown(tenths)} g/dL: {shown} = {found:.1f} mmHg"]
+
+
 def _check(given: Given) -> list[str]:
     body = given["body"]
     two, rest = checks.check_characters(body), checks.remainder(body)
@@ -127,6 +134,7 @@ WORKERS: Mapping[str, Worker] = {
     "repeatability": _repeat,
     "mean_arterial_pressure": _map,
     "perfusion_pressure": _perfusion,
+    "colloid_osmotic_pressure": _osmotic,
     "check_characters": _check,
 }
 

@@ -176,7 +176,11 @@ def _formulas() -> Iterator[Sourced]:
         )
 
 
-PARAMETERS = {"ranges": "Ranges of entry", "repeatability": "Repeatability for the chart's bars"}
+PARAMETERS = {
+    "ranges": "Ranges of entry",
+    "repeatability": "Repeatability for the chart's bars",
+    "osmosis": "Coefficients of the colloid osmotic pressure",
+}
 """Parameter files of ``measures`` and what they hold."""
 SAID = ("cite", "memory", "place", "why", "allowed", "unlikely_why", "looks_like_g_l_why", "unit")
 """Entries of a parameter table that aren't values themselves."""

@@ -125,6 +125,8 @@ EXPECTED = {
     # 78 + 60 / 3
     "mean_arterial_pressure": ["78 + (138 − 78) / 3 = 98.0 mmHg"],
     # 65.33 - 18
+    # 2.1 x 7 = 14.7; 0.16 x 49 = 7.84; 0.009 x 343 = 3.087
+    "colloid_osmotic_pressure": ["C = 7.0 g/dL: 14.70 + 7.84 + 3.09 = 25.6 mmHg"],
     "perfusion_pressure": ["78 + (138 − 78) / 3 = 98.0 mmHg", "2/3 × 98.0 − 18 = 47.3 mmHg"],
 }
 
