@@ -25,6 +25,8 @@ COLUMN_WORDS = {
     "kind": "kind of visit",
     "acuity_correction": "correction of the acuity",
     "hist_treatments": "treatments before the log",
+    "treatment_planned": "whether a treatment is planned",
+    "context": "what bears on a treatment",
 }
 """Columns whose name isn't a word of the clinic."""
 

@@ -5,12 +5,13 @@ from typing import Any
 
 from django import forms
 
+from clinic.adapters.facts import READINGS
 from clinic.forms.fields import FreeTextField, IsoDateField, ParsedField, choices
 from clinic.models import Eye, PersonFact
-from clinic.services.fact_checks import HOLDS
+from clinic.services.fact_checks import HOLDS, follows
 from trends.measures import blood, context
 
-Kind, Change = PersonFact.Kind, PersonFact.Change
+Kind = PersonFact.Kind
 
 
 def _agents(blank: str) -> forms.ChoiceField:
@@ -34,11 +35,12 @@ class FactForm(forms.Form):
     def __init__(self, *args: Any, kind: str, sides: list[str], **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)
         self.kind = kind
-        if kind in (Kind.BLOOD_PRESSURE, Kind.TOTAL_PROTEIN):
+        if kind in READINGS:
             self.fields["day"].label = "Measured on"
         if kind == Kind.INFLAMMATION:
             known = [(value, label) for value, label in Eye.Side.choices if value in sides]
-            self.fields["eye"] = forms.ChoiceField(choices=known, label="Eye")
+            first = [("", "choose the eye")]
+            self.fields["eye"] = forms.ChoiceField(choices=[*first, *known], label="Eye")
         for name, must in HOLDS.get(kind, {}).items():
             self.fields[name] = self._field(name, must=must)
         own = [name for name in self.fields if name not in ("day", "ask_again_by")]
@@ -64,13 +66,19 @@ class FactForm(forms.Form):
 class FactFollowForm(forms.Form):
     """What became of a fact."""
 
-    CHOICES = [(one.value, one.label) for one in (Change.STILL, Change.ENDED, Change.WITHDRAWN)]
-    change = forms.ChoiceField(choices=CHOICES, label="It")
+    change = forms.ChoiceField(label="What became of it")
     day = IsoDateField(label="On", required=True)
     ask_again_by = IsoDateField(label="Ask again by, if it still holds")
     reason = FreeTextField(
         required=False, max_length=280, label="Reason, if it was entered by mistake"
     )
+
+    def __init__(self, *args: Any, kind: str, **kwargs: Any) -> None:
+        super().__init__(*args, **kwargs)
+        can = [(change.value, change.label) for change in follows(kind)]
+        self.fields["change"] = forms.ChoiceField(
+            choices=[("", "choose"), *can], label="What became of it"
+        )
 
     def values(self) -> dict[str, Any]:
         """Return what the service takes."""

@@ -37,6 +37,8 @@ COLUMNS = {
     "status": "status",
     "date": "an earlier value",
     "regimen": "regimen",
+    "treatment_planned": "whether a treatment is planned",
+    "context": "what bears on a treatment",
 }
 
 

@@ -4,6 +4,7 @@ import datetime as dt
 from collections.abc import Mapping
 from typing import Any
 
+from clinic.adapters.facts import READINGS
 from clinic.models import Eye, Patient, PersonFact
 from clinic.services.part_checks import day_checked, within, word_checked
 from clinic.services.refusals import PartRefused
@@ -42,6 +43,14 @@ def fact_checked(
     if values.get("agent"):
         word_checked("agent", values["agent"], context.inflaming())
     _readings_checked(values)
+
+
+def follows(kind: str) -> tuple[PersonFact.Change, ...]:
+    """Return what may become of an entry: a reading can only have been a mistake."""
+    change = PersonFact.Change
+    return (
+        (change.WITHDRAWN,) if kind in READINGS else (change.STILL, change.ENDED, change.WITHDRAWN)
+    )
 
 
 def again_checked(ask_again_by: dt.date | None, day: dt.date) -> None:

@@ -10,7 +10,7 @@ from django.db.models import Max
 from clinic.adapters.facts import Standing, standing
 from clinic.models import Eye, Patient, PersonFact, User
 from clinic.services import ledger
-from clinic.services.fact_checks import again_checked, fact_checked
+from clinic.services.fact_checks import again_checked, fact_checked, follows
 from clinic.services.locks import locked
 from clinic.services.part_checks import day_checked, word_checked
 from clinic.services.refusals import PartRefused, reason_given
@@ -19,7 +19,6 @@ from clinic.services.revisions import repeats
 
 Values = Mapping[str, Any]
 Kind, Change = PersonFact.Kind, PersonFact.Change
-LATER = (Change.STILL, Change.ENDED, Change.WITHDRAWN)
 
 
 def _standing(patient: Patient) -> list[Standing]:
@@ -87,7 +86,7 @@ def fact_follow(
     reason: str = "",
 ) -> PersonFact:
     """Say what became of an entry: it still holds, it ended, or it was a mistake (with why)."""
-    word_checked("what became of it", change, LATER)
+    word_checked("what became of it", change, follows(entry.kind))
     day_checked("day", day, today)
     if change == Change.WITHDRAWN:
         reason = reason_given(reason, of="taking back", why="A fact is being taken back.")

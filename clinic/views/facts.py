@@ -42,7 +42,9 @@ def fact_later(request: HttpRequest, slug: str, code: str, seq: int) -> HttpResp
     entry = rows.filter(seq=seq, change=PersonFact.Change.ENTRY).first()
     if entry is None:
         raise Http404
-    form = FactFollowForm(request.POST or None, initial=first_values(timezone.localdate()))
+    form = FactFollowForm(
+        request.POST or None, initial=first_values(timezone.localdate()), kind=entry.kind
+    )
     if request.method == "POST" and form.is_valid():
         who = {"by": here.user, "at": timezone.now(), "today": timezone.localdate()}
         if stored(form, fact_follow, entry=entry, **form.values(), **who):

@@ -125,6 +125,14 @@ def test_a_fact_is_followed_in_order_and_taken_back_with_a_reason(clinic: Clinic
     ]
 
 
+def test_a_reading_is_only_ever_taken_back(clinic: Clinic) -> None:
+    fact = enter(clinic, clinic.enrol(), "total_protein", weeks_ago(4), protein_tenths=71)
+    for change in ("still", "ended"):
+        with pytest.raises(PartRefused):
+            follow(clinic, fact, change)
+    assert follow(clinic, fact, "withdrawn", reason="in g/L").about == fact
+
+
 def test_none_of_these_is_refused_while_something_stands(clinic: Clinic) -> None:
     patient = clinic.enrol()
     fact = enter(clinic, patient, "pregnancy", weeks_ago(4))

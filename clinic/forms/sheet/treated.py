@@ -43,7 +43,7 @@ class TreatedForm(EyeForm):
         choices=choices("intravitreal", "sub_tenon", "topical", "oral"), required=False
     )
     implant = forms.BooleanField(required=False, label="implant")
-    lot = forms.CharField(required=False, max_length=20, label="Lot (optional)")
+    lot = forms.CharField(required=False, max_length=20, label="Lot (optional; + joins two)")
     laser = forms.ChoiceField(
         choices=choices("focal", "grid", "panretinal", blank="no laser"), required=False
     )
