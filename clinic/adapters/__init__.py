@@ -6,9 +6,10 @@ Withdrawn records are blank. Status, cause and course are those in force on the 
 
 from clinic.adapters.columns import from_records, load
 from clinic.adapters.loaded import UNMEASURED, Loaded, Place, with_assumed
-from clinic.adapters.records import BREAKING, MEASURED, TREATED, Records, read
+from clinic.adapters.records import AHEAD, BREAKING, MEASURED, TREATED, Records, read
 
 __all__ = [
+    "AHEAD",
     "BREAKING",
     "MEASURED",
     "TREATED",

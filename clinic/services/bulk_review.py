@@ -45,7 +45,7 @@ RECORDS: tuple[tuple[str, type[models.Model], tuple[str, ...]], ...] = (
     ("measured", Measured, adapters.MEASURED),
     ("treated", Treated, adapters.TREATED),
     ("decided", Decided, ()),
-    ("ahead", NextStep, ("due_day",)),
+    ("ahead", NextStep, adapters.AHEAD),
     ("contacts", ContactEntry, ("symptoms",)),
 )
 
@@ -143,8 +143,10 @@ def records_of(rows: Rows, assumed: tuple[str, ...]) -> adapters.Records:
         for name, model, wanted in RECORDS
     }
     more: dict[int, list[str]] = defaultdict(list)
+    lots: dict[int, list[str]] = defaultdict(list)
     for row in rows.get(MoreTreatment, []):
         more[row.treated.pk].append(row.agent)
+        lots[row.treated.pk].append(row.lot)
     return adapters.Records(
         visits=visits,
         eyes={
@@ -153,6 +155,7 @@ def records_of(rows: Rows, assumed: tuple[str, ...]) -> adapters.Records:
             if eye.patient.pk in new
         },
         more=more,
+        more_lots=lots,
         states=by_eye(rows.get(EyeState, [])),
         courses=by_eye(sorted(rows.get(Course, []), key=lambda one: (one.from_day, one.seq))),
         events=breaking(rows.get(EyeEvent, [])),
