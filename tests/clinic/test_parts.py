@@ -226,8 +226,12 @@ def test_a_correction_leaves_reviews_alone_whose_input_did_not_change(desk: Desk
     desk.save(patient, "treated", days_ago(28), R={**GIVEN, "lot": "A1"})
     desk.save(patient, "measured", TODAY, R=desk.scan(410))
     before = Review.objects.count()
-    desk.save(patient, "treated", days_ago(28), R={**GIVEN, "lot": "A2"}, reason="typed wrong")
+    other_dose = {**GIVEN, "lot": "A1", "dose_ug": 8000}
+    desk.save(patient, "treated", days_ago(28), R=other_dose, reason="typed wrong")
     assert Review.objects.count() == before
+    other_lot = {**other_dose, "lot": "A2"}
+    desk.save(patient, "treated", days_ago(28), R=other_lot, reason="typed wrong")
+    assert Review.objects.count() == before + 2
 
 
 def test_an_earlier_visit_is_not_touched_by_a_later_ones_correction(desk: Desk) -> None:
