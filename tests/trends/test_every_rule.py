@@ -33,6 +33,15 @@ RAISED: dict[str, tuple[dict[str, str], dict[str, str]]] = {
     ),
     "crossed_limit_possible": ({"cst_um": "280", **SCAN}, {"cst_um": "305", **SCAN}),
     "fluid_back": ({"srf": "no"}, {"srf": "yes"}),
+    "slow_rise": ({"agent": "aflibercept", **SCAN}, {"cst_um": "330", "agent": "none", **SCAN}),
+    "persistent": (
+        {"cst_um": "400", "sex": "f", "agent": "aflibercept", **SCAN},
+        {"cst_um": "390", "sex": "f", "agent": "none", **SCAN},
+    ),
+    "limited_early_response": (
+        {"agent": "aflibercept", **SCAN},
+        {"cst_um": "420", "agent": "none", **SCAN},
+    ),
     "letters_lost": ({"acuity": "70", **LETTERS}, {"acuity": "60", **LETTERS}),
     "off_chart_step": (
         {"acuity": "20", **LETTERS},
@@ -74,6 +83,25 @@ FELLOW = {
 BEFORE: dict[str, list[dict[str, str]]] = {
     "rise_since_withholding": [{"date": "2025-12-01", "agent": "aflibercept"}],
     "drift": [{"date": "2025-12-01", "cst_um": "300", **SCAN}],
+    # Five scans, each 19 days after the same agent, rising by 5 µm; the sixth is the second visit.
+    "slow_rise": [
+        {**SCAN, "date": date, **cells}
+        for month, um in enumerate(("300", "305", "310", "315", "320"), start=6)
+        for date, cells in (
+            (f"2025-{month:02d}-01", {"agent": "aflibercept"}),
+            (f"2025-{month:02d}-20", {"cst_um": um, "agent": "none"}),
+        )
+    ],
+    # Four injections, center-involved throughout; the second visit is day 167.
+    "persistent": [
+        {"date": date, "cst_um": "410", "sex": "f", "agent": "aflibercept", **SCAN}
+        for date in ("2025-08-06", "2025-09-03", "2025-10-01")
+    ],
+    # 430 µm before three injections; the second visit is day 104.
+    "limited_early_response": [
+        {"date": "2025-10-08", "cst_um": "430", "agent": "aflibercept", **SCAN},
+        {"date": "2025-11-05", "agent": "aflibercept", **SCAN},
+    ],
 }
 # Raised ones that show the clinic's own emergency text in place of options.
 EMERGENCIES = {"off_chart_step", "pressure", "alarm_symptoms"}
@@ -143,8 +171,13 @@ def blank_visit(rule: str, kind: str) -> VerdictRow:
     return second_visit(rule, **blank, kind=kind)
 
 
+# An absent scan is what poor_scan raises; limited_early_response is asked at the first visit at
+# which anything was measured, and this isn't one.
+BLANK_IS_TOLD = {"poor_scan", "limited_early_response"}
+
+
 @pytest.mark.parametrize("kind", NEEDED)
-@pytest.mark.parametrize("rule", [one for one in VISIT_RULES if one != "poor_scan"])
+@pytest.mark.parametrize("rule", [one for one in VISIT_RULES if one not in BLANK_IS_TOLD])
 def test_a_blank_measurement_cannot_be_told(rule: str, kind: str) -> None:
     assert blank_visit(rule, kind).outcome == "could_not_tell"
 

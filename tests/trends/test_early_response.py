@@ -1,0 +1,67 @@
+"""V15: each published definition of a poor early response by itself."""
+
+import datetime as dt
+
+import pandas as pd
+import pytest
+
+from trends.limits import LimitSet, shipped
+from trends.review import review
+from trends.visits import Visits
+
+PARTS = ("letters", "fall_fifth", "fall_tenth", "excess")
+
+
+def only(part: str) -> LimitSet:
+    """The general set with one definition on."""
+    text = shipped("general").text
+    for other in PARTS:
+        if other != part:
+            text = text.replace(f"\n{other} = {{ value = true", f"\n{other} = {{ value = false")
+    return LimitSet.from_toml(text)
+
+
+def outcome(part: str, before: tuple[int, int], after: tuple[int, int]) -> str:
+    """Letters and µm before the first and after the third injection, 12 weeks apart."""
+    usual = {
+        "person": "p",
+        "eye": "R",
+        "cause": "diabetic",
+        "agent": "ranibizumab",
+        "oct_class": "SD-BM",
+        "acuity_notation": "etdrs_letters",
+        "acuity_chart": "etdrs",
+    }
+    first = dt.date(2026, 1, 1)
+    rows = [
+        {**usual, "date": (first + dt.timedelta(weeks=4 * visit)).isoformat()} for visit in range(4)
+    ]
+    for row, (letters, um) in ((rows[0], before), (rows[3], after)):
+        row |= {"acuity": str(letters), "cst_um": str(um)}
+    visits = Visits.from_frame(pd.DataFrame(rows).fillna(""))
+    reviewed = review(visits, only(part), dt.date(2027, 1, 1), only=["limited_early_response"])
+    judged = reviewed.judged["limited_early_response"]
+    return {1: "met", 3: "not met"}[int(judged.outcome[3])]
+
+
+@pytest.mark.parametrize(
+    "part,before,after,expected",
+    [
+        # 55/420; after three injections 58/378: +3 letters.
+        ("letters", (55, 420), (58, 378), "met"),
+        ("letters", (55, 420), (60, 378), "not met"),
+        # "No fall of 10 % or more": at exactly 10.0 % not met, at 379 (9.8 %) met.
+        ("fall_tenth", (55, 420), (58, 378), "not met"),
+        ("fall_tenth", (55, 420), (58, 379), "met"),
+        ("fall_fifth", (55, 400), (70, 320), "not met"),
+        ("fall_fifth", (55, 400), (70, 321), "met"),
+        # Normal 270: 480 to 390 removes 90 of 210, 42.9 %; to 375 removes 105 of 210, half.
+        ("excess", (55, 480), (70, 390), "met"),
+        ("excess", (55, 480), (70, 375), "not met"),
+        ("excess", (55, 480), (70, 376), "met"),
+    ],
+)
+def test_v15_each_definition_by_itself(
+    part: str, before: tuple[int, int], after: tuple[int, int], expected: str
+) -> None:
+    assert outcome(part, before, after) == expected

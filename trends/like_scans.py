@@ -1,0 +1,93 @@
+"""Scans made a like time after the same agent: the only ones a slow rise can be told from.
+
+Thickness follows the time since the last injection, so that a trend of all scans under changing
+intervals is false by construction. Like means: the same whole number of weeks, half up, since the
+last treatment, with the same agent, of the same class, with no eye event between.
+"""
+
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+
+from trends.comparable import NONE, grouped, last_before
+from trends.comparisons import Comparisons
+from trends.lowest import Window
+from trends.visits import Bools, Ints, Visits
+
+WEEK = 7
+EVER = 10**5
+
+
+@dataclass(frozen=True)
+class LikeScans:
+    """Like scans before each scan; columns (n,). ``most`` scans altogether, ``within`` days."""
+
+    v: Visits
+    c: Comparisons
+    within: int
+    most: int
+
+    @cached_property
+    def treatment(self) -> Ints:
+        """The last recorded treatment on an earlier day, or NONE."""
+        return last_before(self.v, self.v.eye.astype(np.int64), self.v.given == 1)
+
+    @cached_property
+    def gap(self) -> Bools:
+        """Whether a visit since that treatment didn't record what was given."""
+        blank = (self.v.given < 0) & ~self.v.is_contact
+        unknown = last_before(self.v, self.v.eye.astype(np.int64), blank)
+        later = self.v.day[np.maximum(unknown, 0)] > self.v.day[np.maximum(self.treatment, 0)]
+        return np.asarray((unknown >= 0) & ((self.treatment < 0) | later))
+
+    @cached_property
+    def days(self) -> Ints:
+        """Days since the last treatment; valid where there is one."""
+        return np.asarray(self.v.day - self.v.day[np.maximum(self.treatment, 0)], dtype=np.int64)
+
+    @cached_property
+    def recent(self) -> Bools:
+        """Whether the last treatment is recent enough to count."""
+        return np.asarray((self.treatment >= 0) & (self.days <= self.within))
+
+    @cached_property
+    def group(self) -> Ints:
+        """Number of the like scans each row belongs to, NONE where it belongs to none."""
+        weeks = (2 * self.days + WEEK) // (2 * WEEK)
+        agent = self.v.agents[np.maximum(self.treatment, 0)]
+        told = self.recent & ~self.gap
+        return grouped(
+            self.v.eye.astype(np.int64),
+            self.c.cst_key,
+            np.where(told, agent, NONE),
+            np.where(told, weeks, NONE),
+        )
+
+    @cached_property
+    def window(self) -> Window:
+        """The earlier usable like scans of each row."""
+        usable = self.c.cst_given & ~self.c.poor
+        return Window.of(self.v, self.group, usable, EVER)
+
+    @cached_property
+    def count(self) -> Ints:
+        """How many like scans there are with this one; 0 where it isn't one."""
+        earlier = np.minimum(self.window.count, self.most - 1)
+        return np.where(self.c.cst_given & (self.group >= 0), earlier + 1, 0)
+
+    def rows_of(self, row: int) -> Ints:
+        """Return the like scans of one row, oldest first, itself last."""
+        earlier = int(self.count[row]) - 1
+        end = int(self.window.end[row])
+        return np.append(self.window.order[end - earlier : end], row)
+
+    def values(self, rows: Ints) -> "np.ndarray[tuple[int, int], np.dtype[np.float64]]":
+        """Return the thickness (k, most) of some rows' like scans, newest last; NaN is none."""
+        out = np.full((rows.size, self.most), np.nan)
+        out[:, -1] = self.v.cst_um[rows]
+        for lag in range(1, self.most):
+            have = self.count[rows] > lag
+            scan = self.window.order[self.window.end[rows[have]] - lag]
+            out[have, -1 - lag] = self.v.cst_um[scan]
+        return out
