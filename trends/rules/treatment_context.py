@@ -23,7 +23,7 @@ INFO = RuleInfo(
     version=1,
     title="Context of a treatment",
     needs=("context", "treatment_planned", "agent"),
-    cites=("nct04740931", "nct02985619", "anti-vegf-labels"),
+    cites=("nct04740931", "nct02985619-arterial", "anti-vegf-labels"),
     leans="would rather raise falsely than miss",
 )
 
