@@ -188,7 +188,9 @@ def test_unsorted_rows_are_sorted_and_read_alike() -> None:
     assert np.diff(v.day)[v.eye[1:] == v.eye[:-1]].min() > 0
 
 
-@pytest.mark.parametrize("regimen", ["as_needed_stability", "treat_and_extend", "fixed_interval"])
+@pytest.mark.parametrize(
+    "regimen", ["as_needed_stability", "treat_and_extend", "fixed_interval", "long_interval"]
+)
 def test_one_eye_of_five_thousand_visits_is_judged_in_seconds(regimen: str) -> None:
     days = pd.date_range("2012-01-01", periods=5000, freq="D").strftime("%Y-%m-%d")
     frame = pd.DataFrame({"person": "a", "eye": "R", "date": days, "cause": "diabetic"})

@@ -11,7 +11,8 @@ from trends.review import review
 from trends.ruling import columns_of
 
 AS_OF = dt.date(2030, 1, 1)
-COURSES = [*cases("as_needed_stability"), *cases("treat_and_extend")]
+FILES = ("as_needed_stability", "treat_and_extend", "long_interval")
+COURSES = [case for file in FILES for case in cases(file)]
 
 
 def spoken_of(case: dict[str, Any]) -> dict[str, Spoken]:

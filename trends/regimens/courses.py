@@ -74,3 +74,10 @@ class Courses:
         before: Ints = np.cumsum(flag) - flag
         counted: Ints = before - before[self.start]
         return counted
+
+    def first_of(self, flag: Bools) -> Ints:
+        """First position in the course where ``flag`` holds, before or after each; else NONE."""
+        marked = np.flatnonzero(flag)[::-1]
+        by_course = np.full(self.at.size, NONE)
+        by_course[self.start[marked]] = marked
+        return by_course[self.start]

@@ -8,12 +8,17 @@ import numpy as np
 from trends import words
 from trends.comparisons import Comparisons
 from trends.limits import LimitSet
-from trends.regimens import as_needed_stability, fixed_interval, treat_and_extend
+from trends.regimens import as_needed_stability, fixed_interval, long_interval, treat_and_extend
 from trends.regimens.spoken import Spoken
 from trends.regimens.visited import codes_present
 from trends.visits import Visits
 
-REGIMENS: tuple[ModuleType, ...] = (as_needed_stability, treat_and_extend, fixed_interval)
+REGIMENS: tuple[ModuleType, ...] = (
+    as_needed_stability,
+    treat_and_extend,
+    fixed_interval,
+    long_interval,
+)
 
 
 def by_id() -> dict[str, ModuleType]:
