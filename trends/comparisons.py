@@ -1,6 +1,8 @@
 """What the visits of a file may be compared with, worked out once and shared by all rules."""
 
+from collections.abc import Callable
 from functools import cached_property
+from typing import Any, TypeVar
 
 import numpy as np
 
@@ -8,17 +10,32 @@ from trends import fellow, words
 from trends.comparable import NONE, Previous, last_before, previous
 from trends.visits import MISSING, Bools, Ints, Visits
 
+Kept = TypeVar("Kept")
+
 
 class Comparisons:
     """Shared comparisons of one ``Visits``; ``max_age_days`` bounds skipping back only."""
 
     def __init__(self, v: Visits, max_age_days: int) -> None:
         self.v, self.max_age_days = v, max_age_days
+        self._kept: dict[str, Any] = {}
 
     @cached_property
     def poor(self) -> Bools:
         """A scan said to be poor; a blank quality is usable."""
         return np.asarray(self.v.scan_quality == words.QUALITIES.index("poor"))
+
+    def kept(self, name: str, make: Callable[[], Kept]) -> Kept:
+        """Return what was worked out under a name for the same visits, or work it out now."""
+        if name not in self._kept:
+            self._kept[name] = make()
+        found: Kept = self._kept[name]
+        return found
+
+    @cached_property
+    def last_treatment(self) -> Ints:
+        """The last recorded treatment on an earlier day, or NONE."""
+        return last_before(self.v, self.v.eye.astype(np.int64), self.v.given == 1)
 
     @cached_property
     def cst_given(self) -> Bools:

@@ -11,6 +11,7 @@ import numpy as np
 from trends import history
 from trends.baseline import FAR, first_day
 from trends.comparable import NONE, grouped
+from trends.comparisons import Comparisons
 from trends.visits import Bools, Ints, Visits
 
 
@@ -29,6 +30,11 @@ class FirstMonths:
     def known(self) -> Bools:
         """Whether the eye has a day 0, and nothing was given before the log."""
         return np.asarray((self.day_zero < FAR) & ~history.treated_before_log(self.v))
+
+    @cached_property
+    def every(self) -> Ints:
+        """One key for all rows: compared whatever the method."""
+        return np.zeros(len(self.v), dtype=np.int64)
 
     @cached_property
     def days(self) -> Ints:
@@ -72,3 +78,8 @@ class FirstMonths:
         last = np.full(int(group.max(initial=0)) + 1, NONE, dtype=np.int64)
         last[group[at]] = at
         return np.where(group >= 0, last[np.maximum(group, 0)], NONE)
+
+
+def first_months(v: Visits, c: Comparisons) -> FirstMonths:
+    """Return these facts, worked out once for the same comparisons."""
+    return c.kept("first_months", lambda: FirstMonths(v))

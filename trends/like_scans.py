@@ -31,7 +31,7 @@ class LikeScans:
     @cached_property
     def treatment(self) -> Ints:
         """The last recorded treatment on an earlier day, or NONE."""
-        return last_before(self.v, self.v.eye.astype(np.int64), self.v.given == 1)
+        return self.c.last_treatment
 
     @cached_property
     def gap(self) -> Bools:

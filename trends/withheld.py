@@ -8,7 +8,7 @@ from functools import cached_property
 
 import numpy as np
 
-from trends.comparable import NONE, grouped, last_before
+from trends.comparable import NONE, grouped
 from trends.comparisons import Comparisons
 from trends.visits import Bools, Ints, Visits
 
@@ -23,7 +23,7 @@ class Withheld:
     @cached_property
     def injection(self) -> Ints:
         """The last recorded injection on an earlier day, or NONE."""
-        return last_before(self.v, self.v.eye.astype(np.int64), self.v.given == 1)
+        return self.c.last_treatment
 
     @cached_property
     def nothing(self) -> Bools:

@@ -10,11 +10,13 @@ a third to a half of such eyes gained ten letters by two years. Left out: eyes t
 Raised: 55 letters and 420 µm, after three injections 58 and 378. Not: 61 letters and 330 µm.
 """
 
+from dataclasses import dataclass
+
 import numpy as np
 
 from trends import saying, words
 from trends.comparisons import Comparisons
-from trends.first_months import FirstMonths
+from trends.first_months import FirstMonths, first_months
 from trends.fluid import by_class
 from trends.limits import Table
 from trends.measures.logmar import LETTER_E4
@@ -34,15 +36,26 @@ INFO = RuleInfo(
 FALLS = {"thickness by a fifth": "fall_fifth", "thickness by a tenth": "fall_tenth"}
 
 
+@dataclass(frozen=True)
+class Scans:
+    """The usable comparable scan on or before day 0 (n,), and whether there is any of any class."""
+
+    base: Ints
+    any: Bools
+
+
 def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     """Judge all visits at once; only one an eye is asked."""
-    first = FirstMonths(v)
+    first = first_months(v, c)
     asked = _asked(first, c, limits)
     unsure = _maybe(first, c, limits) & ~asked
-    scan = first.last_at_zero(c.cst_key, c.cst_given & ~c.poor)
+    usable = c.cst_given & ~c.poor
+    scans = Scans(
+        first.last_at_zero(c.cst_key, usable), first.last_at_zero(first.every, usable) >= 0
+    )
     parts = [_letters(v, c, first, limits)]
-    parts += [_fall(v, c, scan, limits, FALLS[name]) for name in INFO.parts[1:3]]
-    parts.append(_excess(v, c, scan, limits))
+    parts += [_fall(v, c, scans, limits, FALLS[name]) for name in INFO.parts[1:3]]
+    parts.append(_excess(v, c, scans, limits))
     untold = Part(unsure, np.zeros(len(v), bool), np.zeros(len(v), bool), 0, None, bit("agent"))
     judged = any_of(
         [_only(part, asked) for part in parts] + [untold], c.followed & (asked | unsure)
@@ -86,7 +99,7 @@ def _letters(v: Visits, c: Comparisons, first: FirstMonths, limits: Table) -> Pa
     on, five = bool(limits["letters"]), limits.number("gain_e4")
     counted = c.letters_given & (v.five_letter_chart == 1)
     base = first.last_at_zero(c.acuity_key, counted)
-    any_base = first.last_at_zero(np.zeros(len(v), np.int64), c.letters_given)
+    any_base = first.last_at_zero(first.every, c.letters_given)
     gain = v.logmar_e4[base].astype(np.int64) - v.logmar_e4
     known = counted & (base >= 0)
     applies = on & np.where(counted, any_base >= 0, (v.acuity_level < 0) & (any_base >= 0))
@@ -100,31 +113,25 @@ def _scan_missing(v: Visits, c: Comparisons, unsure: Bools) -> Ints:
     return np.where(unsure, bit("scan_quality"), given)
 
 
-def _has_base(v: Visits, c: Comparisons) -> Bools:
-    """Return whether any usable scan was made on or before day 0, of whatever class."""
-    every = FirstMonths(v).last_at_zero(np.zeros(len(v), np.int64), c.cst_given & ~c.poor)
-    return np.asarray(every >= 0)
-
-
-def _fall(v: Visits, c: Comparisons, scan: Ints, limits: Table, name: str) -> Part:
-    base = v.cst_um[scan].astype(np.int64)
+def _fall(v: Visits, c: Comparisons, scans: Scans, limits: Table, name: str) -> Part:
+    scan, base = scans.base, v.cst_um[scans.base].astype(np.int64)
     less = 1000 * (base - v.cst_um) < limits.number(f"{name}_permille") * base
     told = c.cst_given & (scan >= 0)
     unsure = told & c.poor & ~less
-    applies = bool(limits[name]) & _has_base(v, c)
+    applies = bool(limits[name]) & scans.any
     rank = RANKS[str(limits["rank"])]
     return Part(applies, told & ~unsure, less, rank, scan, _scan_missing(v, c, unsure))
 
 
-def _excess(v: Visits, c: Comparisons, scan: Ints, limits: Table) -> Part:
+def _excess(v: Visits, c: Comparisons, scans: Scans, limits: Table) -> Part:
     normal = by_class(limits, "normal_um", v.oct_class, MISSING)
-    base = v.cst_um[scan].astype(np.int64)
+    scan, base = scans.base, v.cst_um[scans.base].astype(np.int64)
     thick = (normal != MISSING) & ((scan < 0) | (base > normal))
     gone = 1000 * (base - v.cst_um) < limits.number("excess_permille") * (base - normal)
     diabetic = v.cause == words.CAUSES.index("diabetic")
     told = c.cst_given & (scan >= 0) & diabetic
     unsure = told & c.poor & ~gone
-    applies = bool(limits["excess"]) & thick & _has_base(v, c) & (diabetic | (v.cause < 0))
+    applies = bool(limits["excess"]) & thick & scans.any & (diabetic | (v.cause < 0))
     missing = np.where(v.cause < 0, bit("cause"), _scan_missing(v, c, unsure))
     return Part(applies, told & ~unsure, gone, RANKS[str(limits["rank"])], scan, missing)
 

@@ -14,7 +14,7 @@ import numpy as np
 
 from trends import crossing, fluid, saying, words
 from trends.comparisons import Comparisons
-from trends.first_months import FirstMonths
+from trends.first_months import FirstMonths, first_months
 from trends.limits import Table
 from trends.ruling import Description, Judged, RuleInfo, bit, judged_one
 from trends.states import entered
@@ -33,7 +33,7 @@ INFO = RuleInfo(
 
 def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     """Judge all visits at once: every scan from the first injection on against the limit."""
-    first, diabetic = FirstMonths(v), v.cause == words.CAUSES.index("diabetic")
+    first, diabetic = first_months(v, c), v.cause == words.CAUSES.index("diabetic")
     low, high = (crossing.limit_by_sex(v, limits, sex) for sex in words.SEXES)
     none = c.cst_given & (high == crossing.NO_LIMIT)
     scanned = c.cst_given & ~none
