@@ -81,7 +81,7 @@ def test_a_set_can_move_neither_the_level_nor_the_rank_of_the_floor() -> None:
     off_chart = '[rules.off_chart_step]\nrank = { value = "raise_first"'
     moved = general.replace("floor_tenths = { value = 300", "floor_tenths = { value = 500")
     moved = moved.replace(off_chart, off_chart.replace("raise_first", "keep_in_mind"))
-    assert moved.count("value = 500") == 1 and off_chart not in moved
+    assert moved.count("floor_tenths = { value = 500") == 1 and off_chart not in moved
     reviewed = review(visits_of(ALARMING), LimitSet.from_toml(moved), TODAY)
     assert found(reviewed, "pressure")[1] == "raised raise_first"
     assert found(reviewed, "off_chart_step")[1] == "raised raise_first"
