@@ -5,8 +5,12 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from functools import cache
 from importlib import resources
+from itertools import combinations
 from typing import Any
 
+import numpy as np
+
+from trends import slope
 from trends.citations import Citation, citation
 from trends.measures import blood, logmar, osmosis, pressure, scoring
 from trends.measures import check_characters as checks
@@ -110,6 +114,29 @@ def _osmotic(given: Given) -> list[str]:
     return [f"C = {blood.protein_shown(tenths)} g/dL: {shown} = {found:.1f} mmHg"]
 
 
+def _theil_sen(given: Given) -> list[str]:
+    days, values = given["days"], given["cst_um"]
+    pairs = len(days) * (len(days) - 1) // 2
+    per_day = slope.theil_sen(np.array(days, dtype=float), np.array(values, dtype=float))
+    shown = ", ".join(map(str, values))
+    return [
+        f"{shown} µm on days {', '.join(map(str, days))}",
+        f"median of {pairs} slopes = {per_day:.4f} µm a day = {per_day * 28:.1f} µm in 28 days",
+    ]
+
+
+def _mann_kendall(given: Given) -> list[str]:
+    values = given["cst_um"]
+    pairs = list(combinations(values, 2))
+    rising, falling = sum(a < b for a, b in pairs), sum(a > b for a, b in pairs)
+    s = int(slope.kendall_s(np.array([values], dtype=float))[0])
+    beyond, every = slope.tail(len(values), abs(s))
+    return [
+        f"{', '.join(map(str, values))} µm: S = {rising} − {falling} = {s}",
+        f"p = {beyond} of {every} orders = {beyond / every:.4f}",
+    ]
+
+
 def _check(given: Given) -> list[str]:
     body = given["body"]
     two, rest = checks.check_characters(body), checks.remainder(body)
@@ -135,6 +162,8 @@ WORKERS: Mapping[str, Worker] = {
     "mean_arterial_pressure": _map,
     "perfusion_pressure": _perfusion,
     "colloid_osmotic_pressure": _osmotic,
+    "theil_sen": _theil_sen,
+    "mann_kendall": _mann_kendall,
     "check_characters": _check,
 }
 

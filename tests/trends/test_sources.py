@@ -125,6 +125,17 @@ EXPECTED = {
     # 78 + 60 / 3
     "mean_arterial_pressure": ["78 + (138 − 78) / 3 = 98.0 mmHg"],
     # 65.33 - 18
+    # Differences over gaps in order of size: -3 -3 4 4.5 6.5 7.6 9 29/3 29/3 10 10.25 11 12 16 21;
+    # the eighth of fifteen is 29/3 in 28 days, 29/84 = 0.3452 a day.
+    "theil_sen": [
+        "300, 312, 309, 330, 341, 338 µm on days 0, 28, 56, 84, 112, 140",
+        "median of 15 slopes = 0.3452 µm a day = 9.7 µm in 28 days",
+    ],
+    # All fifteen pairs rise; of 6! = 720 orders one rises and one falls throughout.
+    "mann_kendall": [
+        "300, 304, 309, 315, 318, 325 µm: S = 15 − 0 = 15",
+        "p = 2 of 720 orders = 0.0028",
+    ],
     # 2.1 x 7 = 14.7; 0.16 x 49 = 7.84; 0.009 x 343 = 3.087
     "colloid_osmotic_pressure": ["C = 7.0 g/dL: 14.70 + 7.84 + 3.09 = 25.6 mmHg"],
     "perfusion_pressure": ["78 + (138 − 78) / 3 = 98.0 mmHg", "2/3 × 98.0 − 18 = 47.3 mmHg"],
