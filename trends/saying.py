@@ -78,6 +78,11 @@ def treatment_gap(v: Visits, row: int) -> str:
     return f", {gap} after the last treatment ({v.text('agents', last)})"
 
 
+def counted(number: int, what: str) -> str:
+    """Return ``1 injection``, ``2 injections``."""
+    return f"{number} {what}{'' if number == 1 else 's'}"
+
+
 def percent(change: int, before: int) -> str:
     """Return a change in per cent of a reference, one digit, half up in size, signed."""
     tenths = (abs(change) * 2000 + before) // (2 * before)

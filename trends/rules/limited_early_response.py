@@ -149,12 +149,13 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     base, now = _rows_compared(v, row)
     if base is not None:
         before, after = int(v.cst_um[base]), int(v.cst_um[row])
-        arithmetic.append(f"({before} − {after}) / {before} = {(before - after) / before:.1%} less")
+        share = saying.percent(after - before, before)
+        arithmetic.append(f"({after} − {before}) / {before} = {share}")
         normal = limits.get(f"normal_um_{_klass(v, row)}") if _klass(v, row) else None
         if normal is not None and before > normal:
-            part = (before - after) / (before - normal)
+            gone = saying.percent(before - after, before - normal).removeprefix("+")
             arithmetic.append(
-                f"({before} − {after}) / ({before} − {normal}) = {part:.1%} of excess"
+                f"({before} − {after}) / ({before} − {normal}) = {gone} of the excess gone"
             )
         values += [saying.value(v, one, "cst_um") for one in (base, row)]
     if now is not None:
@@ -162,10 +163,13 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
         arithmetic.insert(0, f"{gained:+g} letters".replace("-", "−"))
         values = [saying.value(v, one, "acuity") for one in (now, row)] + values
     which = int(judged.part[row])
-    met = f"; {INFO.parts[which]} first" if which >= 0 else ""
+    met = f"; met: {INFO.parts[which]}" if which >= 0 else ""
+    after_first = (
+        f"{saying.counted(weeks, 'week')} and {saying.counted(given, 'injection')} after the first"
+    )
     told = "; ".join(arithmetic) or "nothing could be compared with the time before"
     return Description(
-        sentence=f"{eye}: {weeks} weeks and {given} injections after the first: {told}{met}",
+        sentence=f"{eye}: {after_first}: {told}{met}",
         values=values,
         arithmetic=arithmetic,
         limit=_limit_words(limits),

@@ -101,11 +101,12 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     ref = int(judged.ref[row])
     return Description(
         sentence=f"{eye}: CST {shown} µm over the {weeks} weeks since the first injection, "
-        f"{given} injections{stands}{fluid.provisional(v, row)}",
+        f"{saying.counted(given, 'injection')}{stands}{fluid.provisional(v, row)}",
         values=[saying.value(v, one, "cst_um") for one in rows],
         arithmetic=[f"lowest {min(int(v.cst_um[one]) for one in rows)} µm; limit {limit_um} µm"],
         limit=limit,
-        noise=fluid.noise_words(v, limits, row, ref),
+        # No change is claimed, so none is set against the error of two scans.
+        noise=fluid.noise_words(v, limits, row, -1),
         unknowns=fluid.doubts(v, judged, row, ref),
         options=[
             "look at what the regimen reads, and at how the intervals were kept",
