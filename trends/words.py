@@ -21,7 +21,13 @@ NOTATIONS = ("etdrs_letters", "logmar", "snellen_ft", "snellen_m", "decimal", "o
 CHARTS = ("etdrs", "electronic_etdrs", "snellen", "other")
 CORRECTIONS = ("refracted", "glasses", "pinhole", "none")
 IOP_METHODS = ("applanation", "rebound", "non_contact", "other")
-REGIMENS = ("as_needed_stability", "treat_and_extend", "fixed_interval", "long_interval")
+REGIMENS = (
+    "as_needed_stability",
+    "treat_and_extend",
+    "fixed_interval",
+    "long_interval",
+    "personal_interval",
+)
 SEXES = ("f", "m")
 ATTENDANCES = (
     "came",

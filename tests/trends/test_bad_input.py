@@ -189,7 +189,14 @@ def test_unsorted_rows_are_sorted_and_read_alike() -> None:
 
 
 @pytest.mark.parametrize(
-    "regimen", ["as_needed_stability", "treat_and_extend", "fixed_interval", "long_interval"]
+    "regimen",
+    [
+        "as_needed_stability",
+        "treat_and_extend",
+        "fixed_interval",
+        "long_interval",
+        "personal_interval",
+    ],
 )
 def test_one_eye_of_five_thousand_visits_is_judged_in_seconds(regimen: str) -> None:
     days = pd.date_range("2012-01-01", periods=5000, freq="D").strftime("%Y-%m-%d")

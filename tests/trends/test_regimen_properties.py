@@ -24,7 +24,14 @@ ACUITIES = [
     ("20/40", "snellen_ft", "snellen"),
     ("CF", "off_chart", ""),
 ]
-REGIMENS = ["", "as_needed_stability", "treat_and_extend", "fixed_interval", "long_interval"]
+REGIMENS = [
+    "",
+    "as_needed_stability",
+    "treat_and_extend",
+    "fixed_interval",
+    "long_interval",
+    "personal_interval",
+]
 
 
 @st.composite

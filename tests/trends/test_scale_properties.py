@@ -18,7 +18,14 @@ from trends.visits import Visits
 AS_OF = dt.date(2031, 1, 1)
 GENERAL = shipped("general")
 STANDING = {module.INFO.id for module in registry.STANDING_RULES}
-REGIMENS = ("as_needed_stability", "treat_and_extend", "fixed_interval", "long_interval", "")
+REGIMENS = (
+    "as_needed_stability",
+    "treat_and_extend",
+    "fixed_interval",
+    "long_interval",
+    "personal_interval",
+    "",
+)
 # What a percentage-only rule is judged with: time-domain repeatability is published as 11 %.
 TIME_DOMAIN = [(300, 332), (300, 333), (200, 221), (200, 222), (250, 277), (250, 278)]
 

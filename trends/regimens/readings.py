@@ -24,34 +24,29 @@ class Said(IntEnum):
     KEEP = 7
     SHORTEN = 8
     SHORTEN_LATE = 9
+    LOADING_LEAST = 10
+
+
+WORDS = {
+    Said.NOTHING: "",
+    Said.CANT_TELL: "couldn't tell",
+    Said.LOADING: "loading {} of {}",
+    Said.RETREAT: "criteria to retreat met",
+    Said.WITHHOLD: "criteria to withhold met",
+    Said.WITHHOLD_UNTIL: "criteria to withhold met, next visit in {} weeks",
+    Said.EXTEND: "extend to {} weeks",
+    Said.KEEP: "keep",
+    Said.SHORTEN: "shorten to {} weeks",
+    Said.SHORTEN_LATE: "shorten to {} weeks, failed somewhere up to {} weeks; last dry was {}",
+    Said.LOADING_LEAST: "loading {} of at least {}",
+}
+"""The words of each reading, its numbers in order; a number that is NONE is "not known"."""
 
 
 def reading_text(said: int, first: int, second: int, third: int) -> str:
     """Return the exact words of one reading; what the numbers mean depends on the reading."""
-    match said:
-        case Said.CANT_TELL:
-            return "couldn't tell"
-        case Said.LOADING:
-            return f"loading {first} of {second}"
-        case Said.RETREAT:
-            return "criteria to retreat met"
-        case Said.WITHHOLD:
-            return "criteria to withhold met"
-        case Said.WITHHOLD_UNTIL:
-            return f"criteria to withhold met, next visit in {first} weeks"
-        case Said.EXTEND:
-            return f"extend to {first} weeks"
-        case Said.KEEP:
-            return "keep"
-        case Said.SHORTEN:
-            return f"shorten to {first} weeks"
-        case Said.SHORTEN_LATE:
-            last_dry = "not known" if third == NONE else str(third)
-            return (
-                f"shorten to {first} weeks, failed somewhere up to {second} weeks; "
-                f"last dry was {last_dry}"
-            )
-    return ""
+    shown = ["not known" if number == NONE else number for number in (first, second, third)]
+    return WORDS[Said(said)].format(*shown)
 
 
 def reading_texts(said: npt.NDArray[np.int8], numbers: Ints) -> list[str]:

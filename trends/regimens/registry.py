@@ -8,7 +8,13 @@ import numpy as np
 from trends import words
 from trends.comparisons import Comparisons
 from trends.limits import LimitSet
-from trends.regimens import as_needed_stability, fixed_interval, long_interval, treat_and_extend
+from trends.regimens import (
+    as_needed_stability,
+    fixed_interval,
+    long_interval,
+    personal_interval,
+    treat_and_extend,
+)
 from trends.regimens.spoken import Spoken
 from trends.regimens.visited import codes_present
 from trends.visits import Visits
@@ -18,6 +24,7 @@ REGIMENS: tuple[ModuleType, ...] = (
     treat_and_extend,
     fixed_interval,
     long_interval,
+    personal_interval,
 )
 
 

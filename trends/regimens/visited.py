@@ -167,8 +167,12 @@ class Visited:
     def earlier_injections(self, loading: Ints) -> Ints:
         """Injections of the course before the log; at least the loading where it was done."""
         known = self.history(lambda entered: _treatments(entered) or 0, 0)
-        loaded = self.history(lambda entered: int(_loaded(entered)), 0) == 1
-        return np.where(loaded, np.maximum(known, loading), known)
+        return np.where(self.loaded_before, np.maximum(known, loading), known)
+
+    @cached_property
+    def loaded_before(self) -> Bools:
+        """Whether the history says that loading was done before the log."""
+        return np.asarray(self.history(lambda entered: int(_loaded(entered)), 0) == 1)
 
     @cached_property
     def earlier_last_day(self) -> Ints:
