@@ -138,6 +138,11 @@ def test_one_thickness_in_both_eyes(right: str, left: str, expected: list[str]) 
     assert outcomes("same_in_both_eyes", f"R {DAY} {right}", f"L {DAY} {left}") == expected
 
 
+def test_a_second_scan_of_no_known_class_takes_nothing_back() -> None:
+    lines = (f"R {DAY} {SCAN}", f"L {DAY} {SCAN}", f"L {DAY} cst_um=312 kind=virtual")
+    assert outcomes("same_in_both_eyes", *lines) == ["raised", "raised", f"{UNKNOWN} oct_class"]
+
+
 def test_one_assumed_scanner_is_a_class_too() -> None:
     rows = [{"person": "p", "eye": eye, "date": DAY, "cst_um": "312"} for eye in "RL"]
     v = Visits.from_frame(pd.DataFrame(rows), one_scanner_assumed=True)
