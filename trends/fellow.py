@@ -11,6 +11,7 @@ from trends.visits import Bools, Ints, Visits
 class Pairs:
     """Each row with each row of the fellow eye on the same day; contacts are left out.
 
+    So are rows of an eye that counts days from its own first visit: its days match no other eye's.
     ``row`` and ``other`` (pairs,) are rows of a ``Visits`` of ``size`` rows.
     """
 
@@ -36,7 +37,8 @@ def pairs(v: Visits) -> Pairs:
     low, high = (int(v.day.min()), int(v.day.max())) if len(v) else (0, 0)
     place = v.person.astype(np.int64) * (high - low + 1) + (v.day - low)
     # Sorted by person, side and day, so the rows of one side stand in the order of their place.
-    right, left = (np.flatnonzero((v.side == side) & ~v.is_contact) for side in (0, 1))
+    usable = ~v.is_contact & (v.own_calendar == 0)
+    right, left = (np.flatnonzero((v.side == side) & usable) for side in (0, 1))
     first = np.searchsorted(place[left], place[right], side="left")
     count = np.searchsorted(place[left], place[right], side="right") - first
     row = np.repeat(right, count)

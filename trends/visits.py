@@ -83,6 +83,7 @@ COLUMNS: dict[str, int] = {
     "systolic_mmhg": MISSING,
     "diastolic_mmhg": MISSING,
     "protein_tenths": MISSING,
+    "own_calendar": 0,
 }
 
 

@@ -6,7 +6,7 @@ from typing import Any
 
 from clinic.adapters.facts import fact_cells
 from clinic.adapters.records import Records
-from clinic.models import Patient, Treated
+from clinic.models import OWN_CALENDAR, Patient, Treated
 from trends import words
 from trends.frames import SCALES
 from trends.measures import symptoms as symptom_words
@@ -122,6 +122,9 @@ def cells_of(
         "symptoms_gone": gone,
         "symptoms_recorded": recorded,
         "decided": int(key in records.decided),
+        "own_calendar": int(
+            OWN_CALENDAR in records.assumed.get(visit.get("from_intake_id") or 0, ())
+        ),
         "due_day": _due(ahead, visit["day"]),
         "scanner": "",
         "grader": "",

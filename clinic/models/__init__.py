@@ -2,7 +2,7 @@
 
 from clinic.models.append_only import AppendOnly, Revision
 from clinic.models.facts import PersonFact
-from clinic.models.intake import IntakeFile
+from clinic.models.intake import OWN_CALENDAR, IntakeFile
 from clinic.models.ledger import Chain, Entry, Seal
 from clinic.models.limit_sets import Adoption, AdoptionConfirmed, LimitSetText
 from clinic.models.patients import (
@@ -67,6 +67,7 @@ APPEND_ONLY = (
 
 __all__ = [
     "APPEND_ONLY",
+    "OWN_CALENDAR",
     "Adoption",
     "AdoptionConfirmed",
     "Answer",

@@ -5,6 +5,9 @@ from django.db import models
 from clinic.models.append_only import AppendOnly
 from clinic.models.sites import Site
 
+OWN_CALENDAR = "each eye counts from its own first visit: the two eyes' dates don't match"
+"""Taken for granted of a file with a day 0 an eye: no rule compares its two eyes by day."""
+
 
 class IntakeFile(AppendOnly):
     """One file of past visits that was taken in, whole. The same file is refused a second time.

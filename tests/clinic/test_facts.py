@@ -9,10 +9,18 @@ from django.http import HttpResponse
 from time_machine import travel
 
 from clinic import adapters
-from clinic.models import Entry, Patient, PersonFact, Review
+from clinic.models import (
+    OWN_CALENDAR,
+    Entry,
+    IntakeFile,
+    Patient,
+    PersonFact,
+    Review,
+    Visit,
+)
 from clinic.services.facts import fact_follow, fact_record
 from clinic.services.parts import EyePart, PartRefused
-from tests.clinic.a_clinic import TODAY, Clinic, eye_of, raised_rules, weeks_ago
+from tests.clinic.a_clinic import AT, TODAY, Clinic, eye_of, raised_rules, weeks_ago
 from tests.clinic.at_the_desk import NOW, Desk, signed_in
 from tests.clinic.filled_forms import own_form, words_of
 from trends.errors import EbblineError
@@ -278,6 +286,26 @@ def test_one_lot_in_both_eyes_is_raised_on_both(clinic: Clinic) -> None:
     for side in "RL":
         raised = {row["rule"] for row in newest[side].raised if row["outcome"] == "raised"}
         assert "same_lot_both_eyes" in raised
+
+
+def test_eyes_of_a_file_without_a_common_calendar_are_not_compared_by_day(clinic: Clinic) -> None:
+    stamp = {"by": clinic.user, "at": AT}
+    counts = {"rows": 2, "visits_stored": 1, "cells_refused": 0}
+    file = IntakeFile.objects.create(
+        site=clinic.site, sha256="0" * 64, assumed=[OWN_CALENDAR], **counts, **stamp
+    )
+    patient = clinic.enrol()
+    Visit.objects.create(
+        patient=patient, day=weeks_ago(4), kind="planned", from_intake=file, **stamp
+    )
+    for week in (4, 2):
+        clinic.save("measured", patient, weeks_ago(week), R=clinic.scan(312), L=clinic.scan(312))
+    assert columns(patient, "own_calendar") == [1, 0]
+    newest = {(one.visit.day, one.eye.side): one for one in Review.objects.order_by("seq")}
+    raised = {
+        key for key, one in newest.items() if "same_in_both_eyes" in {r["rule"] for r in one.raised}
+    }
+    assert raised == {(weeks_ago(2), "R"), (weeks_ago(2), "L")}
 
 
 # The screens.

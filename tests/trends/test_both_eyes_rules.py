@@ -5,6 +5,7 @@ Expected outcomes are read off the rules' words; each row is ``EYE DATE cells``.
 """
 
 import datetime as dt
+from dataclasses import replace
 
 import numpy as np
 import pandas as pd
@@ -254,6 +255,26 @@ def test_the_last_measured_pressure_is_what_counts() -> None:
         "raised",
         NA,
     ]
+
+
+@pytest.mark.parametrize(
+    "rule,cells",
+    [
+        ("same_day_both_implants", {"agent": "dexamethasone"}),
+        ("same_lot_both_eyes", {"agent": "aflibercept", "lot": "A12"}),
+        ("same_in_both_eyes", {"cst_um": "312", "oct_class": "SD-BM"}),
+    ],
+)
+def test_eyes_that_share_no_calendar_share_no_day(rule: str, cells: dict[str, str]) -> None:
+    rows = [{"person": "p", "eye": eye, "date": DAY, **cells} for eye in "RL"]
+    v = Visits.from_frame(pd.DataFrame(rows))
+    for own, expected in (([0, 0], "raised"), ([1, 1], NA), ([1, 0], None)):
+        told = {**v.columns, "own_calendar": np.array(own, dtype=np.int32)}
+        reviewed = review(
+            replace(v, columns=told), shipped("general"), dt.date(2027, 1, 1), only=[rule]
+        )
+        found = [one.outcome for one in rule_rows(reviewed, rule, [0, 1])]
+        assert found == [expected] * 2 if expected else "raised" not in found
 
 
 def test_pairs_are_the_same_as_comparing_every_row_with_every_other() -> None:

@@ -43,7 +43,7 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     unclear = pairs.any(blank[pairs.other]) & ~raised
     return judged_one(
         known=implant & ~unclear,
-        applies=c.followed & (implant | blank),
+        applies=c.followed & (implant | blank) & (v.own_calendar == 0),
         raised=raised,
         rank=str(limits["rank"]),
         ref=pairs.first(fellow),

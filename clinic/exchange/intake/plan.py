@@ -13,7 +13,7 @@ from clinic.exchange.intake.mapping import Mapping as ColumnMapping
 from clinic.exchange.intake.questions import questions
 from clinic.exchange.intake.refused import CellsRefused, IntakeRefused, RefusedCell
 from clinic.exchange.intake.source import Source
-from clinic.models import Patient, Visit
+from clinic.models import OWN_CALENDAR, Patient, Visit
 from clinic.services.past import PastPerson
 from trends.visits import Bools, Visits
 
@@ -205,7 +205,7 @@ def assumed(mapping: ColumnMapping, day_zero: dt.date | None) -> list[str]:
     if day_zero is not None:
         found.append(f"dates are day numbers counted from {day_zero.isoformat()}, a chosen day")
     if mapping.day_zero == "eye":
-        found.append("each eye counts from its own first visit: the two eyes' dates don't match")
+        found.append(OWN_CALENDAR)
     if mapping.one_scanner_per_eye:
         found.append("one scanner per eye")
     found += [
