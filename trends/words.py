@@ -27,6 +27,7 @@ REGIMENS = (
     "fixed_interval",
     "long_interval",
     "personal_interval",
+    "implant",
 )
 SEXES = ("f", "m")
 ATTENDANCES = (

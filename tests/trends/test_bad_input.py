@@ -196,6 +196,7 @@ def test_unsorted_rows_are_sorted_and_read_alike() -> None:
         "fixed_interval",
         "long_interval",
         "personal_interval",
+        "implant",
     ],
 )
 def test_one_eye_of_five_thousand_visits_is_judged_in_seconds(regimen: str) -> None:

@@ -31,6 +31,7 @@ REGIMENS = [
     "fixed_interval",
     "long_interval",
     "personal_interval",
+    "implant",
 ]
 
 

@@ -91,7 +91,13 @@ def test_every_open_choice_of_a_regimen_is_an_entry_of_the_set_with_the_disagree
 
 
 def test_no_reading_orders_anything_and_every_one_offers_choices() -> None:
-    for file in ("as_needed_stability", "treat_and_extend", "long_interval", "personal_interval"):
+    for file in (
+        "as_needed_stability",
+        "treat_and_extend",
+        "long_interval",
+        "personal_interval",
+        "implant",
+    ):
         for case in cases(file):
             found = review(visits_of(case), shipped("general"), dt.date(2030, 1, 1)).regimens
             for one in found.values():

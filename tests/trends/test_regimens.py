@@ -11,7 +11,7 @@ from trends.review import review
 from trends.ruling import columns_of
 
 AS_OF = dt.date(2030, 1, 1)
-FILES = ("as_needed_stability", "treat_and_extend", "long_interval", "personal_interval")
+FILES = ("as_needed_stability", "treat_and_extend", "long_interval", "personal_interval", "implant")
 COURSES = [case for file in FILES for case in cases(file)]
 
 

@@ -24,6 +24,7 @@ REGIMENS = (
     "fixed_interval",
     "long_interval",
     "personal_interval",
+    "implant",
     "",
 )
 # What a percentage-only rule is judged with: time-domain repeatability is published as 11 %.

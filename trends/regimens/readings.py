@@ -25,6 +25,12 @@ class Said(IntEnum):
     SHORTEN = 8
     SHORTEN_LATE = 9
     LOADING_LEAST = 10
+    NO_STEROID = 11
+    BEFORE = 12
+    RECURRENT_BEFORE = 13
+    REACHED = 14
+    REACHED_RECURRENT = 15
+    REACHED_UNKNOWN = 16
 
 
 WORDS = {
@@ -39,6 +45,12 @@ WORDS = {
     Said.SHORTEN: "shorten to {} weeks",
     Said.SHORTEN_LATE: "shorten to {} weeks, failed somewhere up to {} weeks; last dry was {}",
     Said.LOADING_LEAST: "loading {} of at least {}",
+    Said.NO_STEROID: "no steroid in this course yet",
+    Said.BEFORE: "before the trial interval of {} days",
+    Said.RECURRENT_BEFORE: "recurrent, before the trial interval of {} days",
+    Said.REACHED: "trial interval of {} days reached, no recurrence",
+    Said.REACHED_RECURRENT: "trial interval of {} days reached, recurrent",
+    Said.REACHED_UNKNOWN: "trial interval of {} days reached, recurrence not known",
 }
 """The words of each reading, its numbers in order; a number that is NONE is "not known"."""
 

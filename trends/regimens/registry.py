@@ -11,6 +11,7 @@ from trends.limits import LimitSet
 from trends.regimens import (
     as_needed_stability,
     fixed_interval,
+    implant,
     long_interval,
     personal_interval,
     treat_and_extend,
@@ -25,6 +26,7 @@ REGIMENS: tuple[ModuleType, ...] = (
     fixed_interval,
     long_interval,
     personal_interval,
+    implant,
 )
 
 
