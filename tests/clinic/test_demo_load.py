@@ -22,7 +22,9 @@ from clinic.models import (
     Membership,
     Patient,
     PatientStatus,
+    PersonFact,
     Plan,
+    Review,
     Scanner,
     Treated,
     User,
@@ -144,3 +146,18 @@ def test_each_patient_has_a_ledger_entry(loaded: DemoLoaded) -> None:
     chains = set(Entry.objects.filter(action="demo").values_list("chain__name", flat=True))
     assert {f"patient:{patient.code}" for patient in loaded.patients.values()} <= chains
     assert {"site:harbour", "site:moorland"} <= chains
+
+
+def test_most_people_were_asked_what_bears_on_a_treatment_and_some_never(
+    loaded: DemoLoaded,
+) -> None:
+    asked = set(PersonFact.objects.values_list("patient_id", flat=True))
+    never = {patient.pk for patient in loaded.patients.values()} - asked
+    assert len(asked) > len(never) > 0
+    stroke = PersonFact.objects.get(kind="stroke")
+    assert stroke.patient == loaded.patients["longest"]
+    last = Review.objects.filter(eye__patient=stroke.patient).order_by("-visit__day", "-seq")[0]
+    # Sixty days before the visit is within six months: raised, or not where nothing was planned.
+    assert last.outcomes["treatment_context"] in {"raised", "does_not_apply"}
+    raised = Review.objects.filter(eye__patient=stroke.patient, visit__day=stroke.day)
+    assert "raised" in {one.outcomes["treatment_context"] for one in raised}

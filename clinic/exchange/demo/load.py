@@ -7,6 +7,7 @@ from django.db import transaction
 
 from clinic.exchange.demo.afterwards import answer_some, correct_one
 from clinic.exchange.demo.as_past import past_person
+from clinic.exchange.demo.asked import ask_some
 from clinic.exchange.demo.generate import demo_rows
 from clinic.exchange.demo.people import STAFF
 from clinic.exchange.demo.rows import DemoRows, SiteRow
@@ -58,6 +59,7 @@ def demo_load(*, today: dt.date, at: dt.datetime) -> DemoLoaded:
         record_sites(sites, users["steward"], at)
         adopt_general(sites, users, at, today)
         patients = people(rows, sites, users["recorder"], at, today)
+        ask_some(rows, patients, users["recorder"], at, today)
         correct_one(patients[CORRECTED], "R", users["recorder"], at, today)
         answer_some(rows, patients, users["clinician"], at, today)
     return DemoLoaded(users, sites, patients)
