@@ -13,7 +13,10 @@ from trends.rules import registry as rules
 
 FIRST = "general"
 """The set shown first where none is in force."""
-OTHER_TITLE = "Comparison with earlier values"
+OTHER_TITLES = {
+    "comparison": "Comparison with earlier values",
+    "prediction": "What a value is expected to be, for doubts",
+}
 
 
 @dataclass(frozen=True)
@@ -73,7 +76,7 @@ def set_page(row: LimitSetText) -> SetPage:
     named = {**rules.by_id(), **regimens.by_id()}
     tables = [
         TableLines(
-            str(named[table.name].INFO.title) if table.name in named else OTHER_TITLE,
+            str(named[table.name].INFO.title) if table.name in named else OTHER_TITLES[table.name],
             table.name,
             tuple(
                 EntryLine(

@@ -64,6 +64,10 @@ RAISED: dict[str, tuple[dict[str, str], dict[str, str]]] = {
         {"iop_mmhg": "14", "iop_method": "rebound"},
     ),
     "same_in_both_eyes": ({}, {"cst_um": "312", **SCAN}),
+    "looks_like_other_eye": ({"cst_um": "305", **SCAN}, {"cst_um": "420", **SCAN}),
+    "transposed": ({"cst_um": "350", **SCAN}, {"cst_um": "530", **SCAN}),
+    "unlikely_jump": ({"cst_um": "305", **SCAN}, {"cst_um": "671", **SCAN}),
+    "unit_doubt": ({"cst_um": "300", **SCAN}, {"cst_um": "119", **SCAN}),
     "poor_scan": ({"cst_um": "300"}, {"cst_um": "300", "scan_quality": "poor"}),
     # Nothing after the second visit until the day asked: due, late, away, without a next plan.
     "did_not_come": ({}, {"due_date": "2026-03-01", "agent": "none"}),
@@ -78,6 +82,7 @@ FELLOW = {
     "same_day_both_implants": {"agent": "fluocinolone"},
     "same_lot_both_eyes": {"agent": "aflibercept", "lot": "a1"},
     "same_in_both_eyes": {"cst_um": "312", **SCAN},
+    "looks_like_other_eye": {"cst_um": "300", **SCAN},
 }
 # Earlier visits of the eye, where two don't make a history.
 BEFORE: dict[str, list[dict[str, str]]] = {
@@ -96,6 +101,25 @@ BEFORE: dict[str, list[dict[str, str]]] = {
     "persistent": [
         {"date": date, "cst_um": "410", "sex": "f", "agent": "aflibercept", **SCAN}
         for date in ("2025-08-06", "2025-09-03", "2025-10-01")
+    ],
+    # Three earlier scans of each eye, alike within it and unlike between them.
+    "looks_like_other_eye": [
+        {**SCAN, "date": date, "eye": eye, "cst_um": um}
+        for date, right, left in (
+            ("2025-11-01", "300", "420"),
+            ("2025-12-01", "310", "415"),
+            ("2026-01-01", "", "425"),
+        )
+        for eye, um in (("R", right), ("L", left))
+        if um
+    ],
+    "transposed": [
+        {"date": "2025-11-01", "cst_um": "340", **SCAN},
+        {"date": "2025-12-01", "cst_um": "345", **SCAN},
+    ],
+    "unlikely_jump": [
+        {"date": "2025-11-01", "cst_um": "300", **SCAN},
+        {"date": "2025-12-01", "cst_um": "310", **SCAN},
     ],
     # 430 µm before three injections; the second visit is day 104.
     "limited_early_response": [
@@ -119,7 +143,8 @@ def second_visit(rule: str, **also: str) -> VerdictRow:
     usual = {"person": "p", "eye": "R"}
     visits = Visits.from_frame(pd.DataFrame([{**usual, **row} for row in rows]).fillna(""))
     reviewed = review(visits, shipped("general"), AS_OF)
-    place = len(before) + 1 if rule in VISIT_RULES else 0
+    earlier = sum(row.get("eye", "R") == "R" for row in before)
+    place = earlier + 1 if rule in VISIT_RULES else 0
     return next(rule_rows(reviewed, rule, [place], all_working=True))
 
 

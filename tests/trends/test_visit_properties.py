@@ -163,6 +163,10 @@ DECIDING = {
     "acuity_method_changed": ["acuity"],
     "tonometer_changed": ["iop_mmhg"],
     "same_in_both_eyes": ["cst_um"],
+    "looks_like_other_eye": ["cst_um", "acuity", "iop_mmhg"],
+    "transposed": ["cst_um"],
+    "unlikely_jump": ["cst_um", "acuity", "iop_mmhg"],
+    "unit_doubt": ["cst_um", "acuity", "iop_mmhg"],
     "poor_scan": ["cst_um", "scan_quality"],
 }
 

@@ -15,6 +15,7 @@ from trends.rules import (
     late,
     letters_lost,
     limited_early_response,
+    looks_like_other_eye,
     no_plan,
     off_chart_step,
     persistent,
@@ -31,8 +32,11 @@ from trends.rules import (
     thickening_possible,
     tonometer_changed,
     too_soon,
+    transposed,
     treatment_context,
     undecided,
+    unit_doubt,
+    unlikely_jump,
 )
 
 VISIT_RULES: tuple[ModuleType, ...] = (
@@ -59,6 +63,10 @@ VISIT_RULES: tuple[ModuleType, ...] = (
     acuity_method_changed,
     tonometer_changed,
     same_in_both_eyes,
+    looks_like_other_eye,
+    transposed,
+    unlikely_jump,
+    unit_doubt,
     poor_scan,
 )
 STANDING_RULES: tuple[ModuleType, ...] = (
