@@ -6,19 +6,27 @@ from typing import Any
 import pytest
 
 from tests.trends.eye_courses import cases, column_of, limits_with, visits_of
+from trends.regimens import registry
 from trends.regimens.spoken import Spoken
 from trends.review import review
 from trends.ruling import columns_of
 
 AS_OF = dt.date(2030, 1, 1)
-FILES = ("as_needed_stability", "treat_and_extend", "long_interval", "personal_interval", "implant")
+FILES = (
+    "as_needed_stability",
+    "treat_and_extend",
+    "long_interval",
+    "personal_interval",
+    "implant",
+    "treat_and_extend_forms",
+)
 COURSES = [case for file in FILES for case in cases(file)]
 
 
 def spoken_of(case: dict[str, Any]) -> dict[str, Spoken]:
     regimen = case.get("regimen", "as_needed_stability")
     limits = limits_with(case.get("settings", {}), regimen)
-    return review(visits_of(case), limits, AS_OF).regimens
+    return review(visits_of(case), limits, AS_OF, list(registry.by_id())).regimens
 
 
 def readings_of(spoken: dict[str, Spoken], size: int) -> list[str]:

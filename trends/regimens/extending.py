@@ -9,7 +9,7 @@ from functools import cached_property
 
 import numpy as np
 
-from trends.regimens import truth
+from trends.regimens import inactive, truth
 from trends.regimens.courses import NONE, Bools, Courses, Ints, whole_weeks
 from trends.regimens.pairs import (
     Change,
@@ -19,7 +19,7 @@ from trends.regimens.pairs import (
     thicker,
     thinner,
 )
-from trends.regimens.truth import NO, Truth
+from trends.regimens.truth import NO, YES, Truth
 
 NOT_GRADED, FLUID_NO, FLUID_YES, FLUID_UNSURE = 0, 1, 2, 3
 """Codes of IRF and SRF here; blank and not graded are one."""
@@ -27,7 +27,10 @@ NOT_GRADED, FLUID_NO, FLUID_YES, FLUID_UNSURE = 0, 1, 2, 3
 
 @dataclass(frozen=True)
 class Extending:
-    """Parameters, each one number for all positions or an array with one entry a position."""
+    """Parameters, each one number for all positions or an array with one entry a position.
+
+    ``shorten_weeks`` of 0 shortens by ``step_weeks``.
+    """
 
     loading: Ints
     change: Change
@@ -35,6 +38,9 @@ class Extending:
     least_weeks: Ints
     most_weeks: Ints
     late_days: Ints
+    shorten_weeks: Ints
+    return_to_last_dry: Bools
+    inactive_visits: Ints
     by_cst: Bools
     by_letters: Bools
     by_fluid: Bools
@@ -46,7 +52,8 @@ class Treated:
 
     ``injected`` and ``not_recorded`` exclude each other; ``due_day`` is the day set at the visit
     for the next one, valid where ``due_set``. ``only_shortens``: a kind of visit that never
-    extends. ``irf`` and ``srf`` have one more entry, for "no such visit".
+    extends; ``silent``: a visit without a reading. ``irf`` and ``srf`` have one more entry, for
+    "no such visit".
     """
 
     day: Ints
@@ -55,6 +62,7 @@ class Treated:
     due_set: Bools
     due_day: Ints
     only_shortens: Bools
+    silent: Bools
     values_at: Ints
     irf: Ints
     srf: Ints
@@ -200,9 +208,23 @@ class Judged:
 
     @cached_property
     def shorter_weeks(self) -> Ints:
-        """The plan less one step, never below the least."""
-        shorter: Ints = self.planned_weeks - self.params.step_weeks
-        return np.maximum(shorter, self.params.least_weeks)
+        """The plan less one step, or the last dry interval where set; never below the least."""
+        p = self.params
+        step = np.where(p.shorten_weeks == 0, p.step_weeks, p.shorten_weeks)
+        shorter = np.where(self.returns, self.last_dry_planned, self.planned_weeks - step)
+        return np.asarray(np.maximum(shorter, p.least_weeks))
+
+    @cached_property
+    def last_dry_planned(self) -> Ints:
+        """Planned interval at the last dry visit; valid where ``returns``."""
+        return self.planned_weeks[self.last_dry]
+
+    @cached_property
+    def returns(self) -> Bools:
+        """Whether a worse eye goes back to the last dry interval: known, and below the plan."""
+        planned = (self.last_dry != NONE) & (self.plan_set_at[self.last_dry] != NONE)
+        shorter = self.last_dry_planned < self.planned_weeks
+        return np.asarray(planned & shorter & self.params.return_to_last_dry)
 
     @cached_property
     def longer_weeks(self) -> Ints:
@@ -214,4 +236,15 @@ class Judged:
     def extend(self) -> Truth:
         """Whether the plan is extended, worse being NO: nothing holds it and there is room."""
         room = (self.longer_weeks > self.planned_weeks) & ~self.never_extends
-        return truth.where(room, truth.opposite(self.holding), NO)
+        return truth.where(room & self.quiet_again[0], truth.opposite(self.holding), NO)
+
+    @cached_property
+    def quiet_again(self) -> tuple[Bools, Ints]:
+        """Whether enough quiet visits came since the last worse one, and the run before."""
+        judged = (self.injections >= self.params.loading) & ~self.treated.silent
+        worse = judged & (self.worse == YES)
+        counts = judged & ~self.treated.only_shortens
+        quiet = counts & ~self.agent_unknown & (self.worse == NO) & (self.holding == NO)
+        breaks = worse | (counts & ~quiet)
+        needed = self.params.inactive_visits
+        return inactive.may_extend(self.courses, quiet, breaks, worse, needed)

@@ -19,6 +19,7 @@ from trends.regimens.extending import (
     Treated,
 )
 from trends.regimens.pairs import Change, cst_lacks, letters_lack
+from trends.regimens.planned import ONLY_SHORTEN
 from trends.regimens.readings import Said
 from trends.regimens.spoken import AtPositions
 from trends.regimens.truth import NO, UNKNOWN, YES, Truth
@@ -27,7 +28,6 @@ from trends.ruling import bit
 from trends.visits import MISSING
 
 GRADES = {"no": FLUID_NO, "yes": FLUID_YES, "unsure": FLUID_UNSURE, "not_graded": NOT_GRADED}
-ONLY_SHORTEN = ("check_only", "unscheduled", "after_surgery")
 
 
 @dataclass(frozen=True)
@@ -49,6 +49,7 @@ class ExtendingCourses:
             due_set=due_day != MISSING,
             due_day=due_day,
             only_shortens=w.kind_is(*ONLY_SHORTEN),
+            silent=w.skipped,
             values_at=w.values_at,
             irf=w.grade(v.irf, GRADES, NOT_GRADED),
             srf=w.grade(v.srf, GRADES, NOT_GRADED),
@@ -67,6 +68,9 @@ class ExtendingCourses:
             least_weeks=number("least_weeks"),
             most_weeks=number("most_weeks"),
             late_days=number("late_days"),
+            shorten_weeks=number("shorten_weeks"),
+            return_to_last_dry=number("return_to_last_dry"),
+            inactive_visits=number("inactive_visits_before_extending"),
             by_cst=number("by_cst"),
             by_letters=number("by_letters"),
             by_fluid=number("by_fluid"),

@@ -93,10 +93,26 @@ def _plan_line(courses: ExtendingCourses, p: int) -> str:
     due = int(j.treated.due_day[j.plan_set_at[p]])
     last = int(w.day[j.last[p]])
     off = int(j.days_off_plan[p])
-    return (
+    line = (
         f"planned interval: {date_words(last)} to {date_words(due)} = {due - last} days = "
         f"{int(j.planned_weeks[p])} weeks (half up); visit {abs(off)} days "
         f"{'after' if off > 0 else 'before' if off < 0 else 'off'} the due day "
         f"(allowed {number_at(params.late_days, p)}); step {number_at(params.step_weeks, p)}, "
         f"least {number_at(params.least_weeks, p)}, most {number_at(params.most_weeks, p)} weeks"
     )
+    return line + _other_steps(courses, p)
+
+
+def _other_steps(courses: ExtendingCourses, p: int) -> str:
+    """Return how this set shortens and when it extends again, where it isn't by the step."""
+    j, params = courses.judged, courses.params
+    said = []
+    if number_at(params.shorten_weeks, p):
+        said.append(f"shortened by {number_at(params.shorten_weeks, p)}")
+    if number_at(params.return_to_last_dry, p):
+        weeks = f"{int(j.last_dry_planned[p])} weeks" if j.returns[p] else "none below the plan"
+        said.append(f"back to the last dry interval, {weeks}")
+    if number_at(params.inactive_visits, p) > 1:
+        needed, run = number_at(params.inactive_visits, p), int(j.quiet_again[1][p])
+        said.append(f"after worse, extended at quiet visit {needed} running (before this: {run})")
+    return "; " + "; ".join(said) if said else ""

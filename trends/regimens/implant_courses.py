@@ -141,9 +141,10 @@ class ImplantCourses:
 
     # What is missing ---------------------------------------------------------------------------
 
-    def _any(self, usable: Bools, key: Ints | None = None) -> Bools:
-        """Whether a position since the last steroid holds ``usable``, of any key unless given."""
-        return self._since(np.zeros(usable.size, np.int64) if key is None else key, usable).any
+    def _any(self, usable: Bools) -> Bools:
+        """Whether a position since the last steroid, and before the visit, holds ``usable``."""
+        before = np.concatenate(([0], np.cumsum(usable[:-1])))
+        return np.asarray(before[:-1] > before[self._from])
 
     @cached_property
     def _cst_lacks(self) -> Ints:
@@ -162,7 +163,7 @@ class ImplantCourses:
     def _letters_lack(self) -> Ints:
         r, at = self.visited.readings, self.visited.courses.at
         recorded = r.has_acuity[at] & self._any(r.has_acuity)
-        same = self._any(r.has_letters, r.letters_scale) & r.has_letters[at]
+        same = self._since(r.letters_scale, r.has_letters).any & r.has_letters[at]
         without = np.where(same, bit("acuity_correction"), bit("acuity_chart"))
         bits = np.where(recorded, without, bit("acuity"))
         return np.where(self.parts["letters"] == UNKNOWN, bits, 0)

@@ -38,7 +38,15 @@ INFO = RegimenInfo(
     ),
     cites=("payne-2017", "vibim-2020"),
     leans="would rather shorten or keep than extend on a change it can't exclude",
-    choices=("step_weeks", "cst_permille", "by_letters", "by_fluid"),
+    choices=(
+        "step_weeks",
+        "shorten_weeks",
+        "return_to_last_dry",
+        "inactive_visits_before_extending",
+        "cst_permille",
+        "by_letters",
+        "by_fluid",
+    ),
     not_for=(
         "Acuity that isn't on a 5-letter chart can't feed the letter criterion.",
         "An interval isn't a drug's label: least and most are the limit set's.",
