@@ -220,6 +220,7 @@ class LongCourses:
         plan, w = self.plan, self.visited
         loading = int(np.broadcast_to(plan.loading, w.day.size)[p])
         count = int(plan.injections[p] + w.injected[p])
-        if count <= loading and not (plan.unknown_after[p] or plan.history_unknown[p]):
+        loads = count < loading or (count == loading and w.injected[p])
+        if loads and not (plan.unknown_after[p] or plan.history_unknown[p]):
             return f"loading {count} of {loading}"
         return plan.place(p)
