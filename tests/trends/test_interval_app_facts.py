@@ -7,8 +7,8 @@ from typing import Any
 import numpy as np
 
 from tests.trends.eye_courses import visits_of
+from trends import words
 from trends.limits import shipped
-from trends.regimens import registry
 from trends.regimens.spoken import Spoken
 from trends.review import review
 from trends.ruling import columns_of
@@ -23,7 +23,7 @@ def course(regimen: str, *visits: list[Any]) -> Visits:
 
 
 def spoken(v: Visits) -> Spoken:
-    (one,) = review(v, shipped("general"), AS_OF, list(registry.by_id())).regimens.values()
+    (one,) = review(v, shipped("general"), AS_OF, words.REGIMENS).regimens.values()
     return one
 
 

@@ -6,7 +6,7 @@ from typing import Any
 import pytest
 
 from tests.trends.eye_courses import cases, column_of, limits_with, visits_of
-from trends.regimens import registry
+from trends import words
 from trends.regimens.spoken import Spoken
 from trends.review import review
 from trends.ruling import columns_of
@@ -26,7 +26,7 @@ COURSES = [case for file in FILES for case in cases(file)]
 def spoken_of(case: dict[str, Any]) -> dict[str, Spoken]:
     regimen = case.get("regimen", "as_needed_stability")
     limits = limits_with(case.get("settings", {}), regimen)
-    return review(visits_of(case), limits, AS_OF, list(registry.by_id())).regimens
+    return review(visits_of(case), limits, AS_OF, words.REGIMENS).regimens
 
 
 def readings_of(spoken: dict[str, Spoken], size: int) -> list[str]:
