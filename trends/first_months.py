@@ -83,3 +83,15 @@ class FirstMonths:
 def first_months(v: Visits, c: Comparisons) -> FirstMonths:
     """Return these facts, worked out once for the same comparisons."""
     return c.kept("first_months", lambda: FirstMonths(v))
+
+
+def since_first(v: Visits, row: int) -> tuple[int, int]:
+    """Return one eye's first recorded injection and how many were given before a row's day.
+
+    The first is a row on or before that day, or NONE.
+    """
+    start, day = int(v.offsets[v.eye[row]]), int(v.day[row])
+    end = int(np.searchsorted(v.eye, v.eye[row], side="right"))
+    given = np.flatnonzero((v.given[start:end] == 1) & (v.day[start:end] <= day)) + start
+    first = int(given[0]) if given.size else NONE
+    return first, int((v.day[given] < day).sum())

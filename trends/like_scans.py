@@ -7,6 +7,7 @@ last treatment, with the same agent, of the same class, with no eye event betwee
 
 from dataclasses import dataclass
 from functools import cached_property
+from typing import Any
 
 import numpy as np
 
@@ -19,13 +20,22 @@ WEEK = 7
 EVER = 10**5
 
 
+def whole_weeks(days: Any) -> Any:
+    """Return days as whole weeks, half up."""
+    return (2 * days + WEEK) // (2 * WEEK)
+
+
 @dataclass(frozen=True)
 class LikeScans:
-    """Like scans before each scan; columns (n,). ``most`` scans altogether, ``within`` days."""
+    """Like scans before each scan; columns (n,). ``least`` to ``most`` scans with it.
+
+    ``within`` is how many days the last treatment may be ago.
+    """
 
     v: Visits
     c: Comparisons
     within: int
+    least: int
     most: int
 
     @cached_property
@@ -54,40 +64,34 @@ class LikeScans:
     @cached_property
     def group(self) -> Ints:
         """Number of the like scans each row belongs to, NONE where it belongs to none."""
-        weeks = (2 * self.days + WEEK) // (2 * WEEK)
         agent = self.v.agents[np.maximum(self.treatment, 0)]
         told = self.recent & ~self.gap
         return grouped(
             self.v.eye.astype(np.int64),
             self.c.cst_key,
             np.where(told, agent, NONE),
-            np.where(told, weeks, NONE),
+            np.where(told, whole_weeks(self.days), NONE),
         )
 
     @cached_property
     def window(self) -> Window:
-        """The earlier usable like scans of each row."""
+        """The earlier usable like scans of each row whose group has enough of them to ask."""
         usable = self.c.cst_given & ~self.c.poor
-        return Window.of(self.v, self.group, usable, EVER)
+        sizes = np.bincount(self.group + 1, self.c.cst_given, minlength=1)
+        asked = self.c.cst_given & (sizes[self.group + 1] >= self.least)
+        return Window.of(self.v, self.group, usable, EVER, asked)
 
     @cached_property
     def count(self) -> Ints:
-        """How many like scans there are with this one; 0 where it isn't one."""
+        """How many like scans are taken with this one; fewer than ``least`` may count as 0."""
         earlier = np.minimum(self.window.count, self.most - 1)
         return np.where(self.c.cst_given & (self.group >= 0), earlier + 1, 0)
 
-    def rows_of(self, row: int) -> Ints:
-        """Return the like scans of one row, oldest first, itself last."""
-        earlier = int(self.count[row]) - 1
-        end = int(self.window.end[row])
-        return np.append(self.window.order[end - earlier : end], row)
-
-    def values(self, rows: Ints) -> "np.ndarray[tuple[int, int], np.dtype[np.float64]]":
-        """Return the thickness (k, most) of some rows' like scans, newest last; NaN is none."""
-        out = np.full((rows.size, self.most), np.nan)
-        out[:, -1] = self.v.cst_um[rows]
+    def scans(self, rows: Ints) -> Ints:
+        """Return some rows' like scans (k, most) as rows, oldest first, itself last."""
+        out = np.full((rows.size, self.most), NONE, dtype=np.int32)
+        out[:, -1] = rows
         for lag in range(1, self.most):
             have = self.count[rows] > lag
-            scan = self.window.order[self.window.end[rows[have]] - lag]
-            out[have, -1 - lag] = self.v.cst_um[scan]
+            out[have, -1 - lag] = self.window.order[self.window.end[rows[have]] - lag]
         return out

@@ -6,6 +6,7 @@ lowest. Only earlier days count; poor scans are no reference.
 
 from dataclasses import dataclass
 from functools import cached_property
+from typing import Any
 
 import numpy as np
 
@@ -13,7 +14,7 @@ from trends.comparable import NONE, grouped
 from trends.comparisons import Comparisons
 from trends.visits import Bools, Ints, Visits
 
-FAR = np.int64(10**9)
+FAR = np.int64(2**62)
 
 
 @dataclass(frozen=True)
@@ -28,17 +29,24 @@ class Window:
     end: Ints
 
     @classmethod
-    def of(cls, v: Visits, group: Ints, usable: Bools, days: int) -> "Window":
-        """Bound each row's earlier usable rows of the same group; ``group`` NONE has none."""
+    def of(
+        cls, v: Visits, group: Ints, usable: Bools, days: int, asked: Bools | None = None
+    ) -> "Window":
+        """Bound each row's earlier usable rows of the same group; ``group`` NONE has none.
+
+        Rows not ``asked`` have none either; all are where nothing is said.
+        """
         low = int(v.day.min(initial=0)) - days
         span = int(v.day.max(initial=0)) - low + 2
         place = group.astype(np.int64) * span + (v.day.astype(np.int64) - low)
         at = np.flatnonzero(usable & (group >= 0))
         order = at[np.argsort(place[at], kind="stable")]
         keys = place[order]
-        end = np.searchsorted(keys, place, side="left")
-        first = np.searchsorted(keys, place - days, side="left")
-        return cls(order, np.where(group >= 0, first, end), end)
+        first, end = np.zeros((2, len(v)), dtype=np.int64)
+        rows = np.flatnonzero(group >= 0 if asked is None else asked & (group >= 0))
+        end[rows] = np.searchsorted(keys, place[rows], side="left")
+        first[rows] = np.searchsorted(keys, place[rows] - days, side="left")
+        return cls(order, first, end)
 
     @property
     def count(self) -> Ints:
@@ -63,34 +71,56 @@ class Lowest:
     def comparable(self) -> Window:
         """Earlier comparable scans."""
         group = grouped(self.v.eye.astype(np.int64), self.c.cst_key)
-        return Window.of(self.v, group, self.usable, self.days)
+        return Window.of(self.v, group, self.usable, self.days, self.c.cst_given)
 
     @cached_property
-    def any_class(self) -> Ints:
-        """How many earlier usable scans there are of any class."""
-        return Window.of(self.v, self.v.eye.astype(np.int64), self.usable, self.days).count
+    def incomparable(self) -> Bools:
+        """Scans with two earlier usable ones or more, but not two that compare."""
+        few = self.c.cst_given & (self.comparable.count < 2)
+        eye = self.v.eye.astype(np.int64)
+        return np.asarray(few & (Window.of(self.v, eye, self.usable, self.days, few).count >= 2))
 
     @cached_property
     def two(self) -> tuple[Ints, Ints]:
-        """Rows of the lowest and the next lowest; the later one at a tie; NONE without two.
-
-        One pass a lag, over the rows that still have a scan so far back.
-        """
-        window, um = self.comparable, self.v.cst_um.astype(np.int64)
-        lowest, second = (np.full(len(self.v), NONE, dtype=np.int64) for _ in range(2))
-        um_lowest, um_second = (np.full(len(self.v), FAR) for _ in range(2))
-        rows, lag = np.flatnonzero(self.c.cst_given & (window.count >= 2)), 1
-        while rows.size:
-            scan = window.order[window.end[rows] - lag]
-            value = um[scan]
-            below = value < um_lowest[rows]
-            between = ~below & (value < um_second[rows])
-            second[rows] = np.where(below, lowest[rows], np.where(between, scan, second[rows]))
-            um_second[rows] = np.where(
-                below, um_lowest[rows], np.where(between, value, um_second[rows])
-            )
-            lowest[rows] = np.where(below, scan, lowest[rows])
-            um_lowest[rows] = np.where(below, value, um_lowest[rows])
-            lag += 1
-            rows = rows[window.count[rows] >= lag]
+        """Rows of the lowest and the next lowest; the later one at a tie; NONE without two."""
+        window, newest = self.comparable, np.int64(2**31 - 1)
+        count, order = window.count, window.order
+        # Thickness and how far back in one number, all different: the lowest, the later at a tie.
+        scans = Pairs.of(
+            (self.v.cst_um[order].astype(np.int64) << 32) + newest - np.arange(order.size)
+        )
+        lowest, second = np.full((2, len(self.v)), NONE, dtype=np.int64)
+        width = 1
+        while width <= count.max(initial=0):
+            rows = np.flatnonzero((count >= max(width, 2)) & (count < 2 * width))
+            found = scans.at(window.first[rows]).joined(scans.at(window.end[rows] - width))
+            lowest[rows] = order[newest - (found.low & newest)]
+            second[rows] = order[newest - (found.next & newest)]
+            scans = scans.at(slice(None, -width)).joined(scans.at(slice(width, None)))
+            width *= 2
         return lowest, second
+
+
+@dataclass(frozen=True)
+class Pairs:
+    """The two lowest of many runs of different numbers; ``next`` FAR in a run of one."""
+
+    low: Ints
+    next: Ints
+
+    @classmethod
+    def of(cls, numbers: Ints) -> "Pairs":
+        """Return runs of one number each."""
+        return cls(numbers, np.full(numbers.size, FAR))
+
+    def at(self, places: Any) -> "Pairs":
+        """Return the runs at some places."""
+        return Pairs(self.low[places], self.next[places])
+
+    def joined(self, other: "Pairs") -> "Pairs":
+        """Return the two lowest of each pair of runs, which may overlap."""
+        higher = np.where(self.low == other.low, FAR, np.maximum(self.low, other.low))
+        return Pairs(
+            np.minimum(self.low, other.low),
+            np.minimum(higher, np.minimum(self.next, other.next)),
+        )

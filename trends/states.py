@@ -20,7 +20,8 @@ def entered(met: Bools, ended: Bools, starts: Bools) -> State:
     """Return where a state is entered; rows are in the order of their days.
 
     ``met`` and ``ended`` (n,) say that a row is known to be in or out of the state; rows that can't
-    be told carry it on. ``starts`` marks the first row of each eye (or of each run).
+    be told carry it on. A row the rule doesn't apply to isn't ``met``: what nobody was shown can't
+    stand as "still". ``starts`` marks the first row of each eye (or of each run).
     """
     run = np.cumsum(ended | starts)
     at, here = np.flatnonzero(met), np.arange(met.size)

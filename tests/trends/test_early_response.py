@@ -8,6 +8,7 @@ import pytest
 from trends.limits import LimitSet, shipped
 from trends.review import review
 from trends.visits import Visits
+from trends.wording import rule_rows
 
 PARTS = ("letters", "fall_fifth", "fall_tenth", "excess")
 
@@ -65,3 +66,29 @@ def test_v15_each_definition_by_itself(
     part: str, before: tuple[int, int], after: tuple[int, int], expected: str
 ) -> None:
     assert outcome(part, before, after) == expected
+
+
+def test_the_reference_is_the_baseline_of_the_part_that_counts() -> None:
+    # Letters were read two weeks before the first scan; 62 is +7, 420 to 400 is −4.8 %.
+    both = {"acuity_notation": "etdrs_letters", "acuity_chart": "etdrs", "agent": "none"}
+    rows = [
+        {"date": "2025-12-18", "acuity": "55", **both},
+        {"date": "2026-01-01", "cst_um": "420", "agent": "ranibizumab"},
+        {"date": "2026-01-29", "agent": "ranibizumab"},
+        {"date": "2026-02-26", "agent": "ranibizumab"},
+        {"date": "2026-03-26", "cst_um": "400", "acuity": "62", **both},
+    ]
+    usual = {"person": "p", "eye": "R", "cause": "diabetic", "oct_class": "SD-BM"}
+    rows = [usual | row for row in rows]
+    told = {}
+    for now in ("62", "58"):
+        rows[4] |= {"acuity": now}
+        visits = Visits.from_frame(pd.DataFrame(rows).fillna(""))
+        rule = "limited_early_response"
+        reviewed = review(visits, shipped("general"), dt.date(2027, 1, 1), only=[rule])
+        work = next(rule_rows(reviewed, rule, [4])).working or {}
+        told[now] = (work["part"], work["reference_date"], work["reference_value"])
+    assert told == {
+        "62": ("thickness by a fifth", "2026-01-01", 420),
+        "58": ("letters", "2025-12-18", "55 letters"),
+    }

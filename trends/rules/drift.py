@@ -41,10 +41,9 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     met = judgeable & (1000 * over >= limits.number("permille") * both)
     met &= over >= 2 * limits.number("um")
     ended = judgeable & ~met & ~c.poor
-    state = entered(met, ended, np.diff(v.eye, prepend=-1) != 0)
-    incomparable = c.cst_given & ~judgeable & (found.any_class >= 2)
+    state = entered(met & c.followed, ended, np.diff(v.eye, prepend=-1) != 0)
     missing = np.where(c.cst_given, 0, bit("cst_um"))
-    missing |= np.where(incomparable, bit("oct_class"), 0)
+    missing |= np.where(found.incomparable, bit("oct_class"), 0)
     missing |= np.where(judgeable & ~met & c.poor, bit("scan_quality"), 0)
     return judged_one(
         known=met | ended,

@@ -11,12 +11,13 @@ Raised: 55 letters and 420 µm, after three injections 58 and 378. Not: 61 lette
 """
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
 from trends import saying, words
 from trends.comparisons import Comparisons
-from trends.first_months import FirstMonths, first_months
+from trends.first_months import FirstMonths, first_months, since_first
 from trends.fluid import by_class
 from trends.limits import Table
 from trends.measures.logmar import LETTER_E4
@@ -33,6 +34,7 @@ INFO = RuleInfo(
     leans="would rather label an eye too many",
     parts=("letters", "thickness by a fifth", "thickness by a tenth", "excess"),
 )
+WEEK = 7
 FALLS = {"thickness by a fifth": "fall_fifth", "thickness by a tenth": "fall_tenth"}
 
 
@@ -53,14 +55,25 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     scans = Scans(
         first.last_at_zero(c.cst_key, usable), first.last_at_zero(first.every, usable) >= 0
     )
-    parts = [_letters(v, c, first, limits)]
+    letters = _letters(v, c, first, limits)
+    parts = [letters]
     parts += [_fall(v, c, scans, limits, FALLS[name]) for name in INFO.parts[1:3]]
     parts.append(_excess(v, c, scans, limits))
     untold = Part(unsure, np.zeros(len(v), bool), np.zeros(len(v), bool), 0, None, bit("agent"))
     judged = any_of(
         [_only(part, asked) for part in parts] + [untold], c.followed & (asked | unsure)
     )
+    judged.extra.update(_evidence(np.flatnonzero(asked), scans, letters, judged))
     return judged
+
+
+def _evidence(rows: Ints, scans: Scans, letters: Part, judged: Judged) -> dict[str, Any]:
+    """Keep of the asked rows both baselines, and whether the letters' one is the reference."""
+    told: Bools = letters.applies & letters.known
+    base = np.where(letters.known, np.asarray(letters.ref), -1)
+    by_letters = np.where(judged.part >= 0, judged.part == 0, told)
+    names = {"scan": scans.base, "letters": base, "by_letters": by_letters}
+    return {"asked": rows, **{name: column[rows] for name, column in names.items()}}
 
 
 def _only(part: Part, asked: Bools) -> Part:
@@ -69,9 +82,14 @@ def _only(part: Part, asked: Bools) -> Part:
 
 def _in_window(first: FirstMonths, c: Comparisons, limits: Table) -> Bools:
     """Return visits in the weeks asked about, with anything to compare."""
-    measured = c.measured_kind & (c.cst_given | (first.v.acuity_level >= 0))
+    measured = c.measured_kind & (c.cst_given | _counted(first.v, c))
     days, early, late = first.days, limits.number("from_days"), limits.number("to_days")
     return np.asarray(first.known & measured & (days >= early) & (days <= late))
+
+
+def _counted(v: Visits, c: Comparisons) -> Bools:
+    """Return acuities in letters: with a value, on a five-letter chart."""
+    return np.asarray(c.letters_given & (v.five_letter_chart == 1))
 
 
 def _first(first: FirstMonths, rows: Bools) -> Bools:
@@ -97,7 +115,7 @@ def _maybe(first: FirstMonths, c: Comparisons, limits: Table) -> Bools:
 
 def _letters(v: Visits, c: Comparisons, first: FirstMonths, limits: Table) -> Part:
     on, five = bool(limits["letters"]), limits.number("gain_e4")
-    counted = c.letters_given & (v.five_letter_chart == 1)
+    counted = _counted(v, c)
     base = first.last_at_zero(c.acuity_key, counted)
     any_base = first.last_at_zero(first.every, c.letters_given)
     gain = v.logmar_e4[base].astype(np.int64) - v.logmar_e4
@@ -138,41 +156,21 @@ def _excess(v: Visits, c: Comparisons, scans: Scans, limits: Table) -> Part:
 
 def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     """Put one row into words: every definition with its numbers, met or not."""
-    eye, first = saying.eye(v, row), FirstMonths(v)
-    if not first.known[row] or int(first.days[row]) < 0:
-        return Description(
-            f"{eye}: no first injection in the log before {saying.day(v, row)}",
-            limit=_limit_words(limits),
-        )
-    weeks, given = int(first.days[row]) // 7, int(first.injections[row])
-    arithmetic, values = [], []
-    base, now = _rows_compared(v, row)
-    if base is not None:
-        before, after = int(v.cst_um[base]), int(v.cst_um[row])
-        share = saying.percent(after - before, before)
-        arithmetic.append(f"({after} − {before}) / {before} = {share}")
-        normal = limits.get(f"normal_um_{_klass(v, row)}") if _klass(v, row) else None
-        if normal is not None and before > normal:
-            gone = saying.percent(before - after, before - normal).removeprefix("+")
-            arithmetic.append(
-                f"({before} − {after}) / ({before} − {normal}) = {gone} of the excess gone"
-            )
-        values += [saying.value(v, one, "cst_um") for one in (base, row)]
-    if now is not None:
-        gained = (int(v.logmar_e4[now]) - int(v.logmar_e4[row])) / LETTER_E4
-        arithmetic.insert(0, f"{gained:+g} letters".replace("-", "−"))
-        values = [saying.value(v, one, "acuity") for one in (now, row)] + values
+    at, limit = int(np.searchsorted(judged.extra["asked"], row)), _limit_words(limits)
+    asked = at < judged.extra["asked"].size and int(judged.extra["asked"][at]) == row
+    when = f"{saying.eye(v, row)}: {_after_first(v, row)}"
+    if not asked:
+        return Description(f"{when}; {_when_asked(limits)}", limit=limit)
+    scan, letters = (int(judged.extra[name][at]) for name in ("scan", "letters"))
+    worked = _letters_worked(v, row, letters) + _scan_worked(v, row, scan, limits)
     which = int(judged.part[row])
     met = f"; met: {INFO.parts[which]}" if which >= 0 else ""
-    after_first = (
-        f"{saying.counted(weeks, 'week')} and {saying.counted(given, 'injection')} after the first"
-    )
-    told = "; ".join(arithmetic) or "nothing could be compared with the time before"
+    told = "; ".join(worked) or "nothing could be compared with the time before"
     return Description(
-        sentence=f"{eye}: {after_first}: {told}{met}",
-        values=values,
-        arithmetic=arithmetic,
-        limit=_limit_words(limits),
+        sentence=f"{when}: {told}{met}",
+        values=_values(v, row, letters, "acuity") + _values(v, row, scan, "cst_um"),
+        arithmetic=worked,
+        limit=limit,
         noise="5 letters and 10 % are within or near what two measurements differ by",
         options=[
             "weigh it with the response still to come: it doesn't support a change by itself",
@@ -180,24 +178,59 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
             "no change, look again at the next visit",
         ],
         not_for=["eyes treated before the log", "a forecast for one eye"],
-        reference_value=int(v.cst_um[base]) if base is not None else None,
+        reference_value=_reference_value(v, judged, row, bool(judged.extra["by_letters"][at])),
     )
+
+
+def _after_first(v: Visits, row: int) -> str:
+    first, given = since_first(v, row)
+    if first < 0:
+        return f"no injection recorded until {saying.day(v, row)}"
+    weeks = saying.counted(int(v.day[row] - v.day[first]) // WEEK, "week")
+    return f"{weeks} and {saying.counted(given, 'injection')} after the first"
+
+
+def _when_asked(limits: Table) -> str:
+    early, late = (limits.number(name) // WEEK for name in ("from_days", "to_days"))
+    least = saying.counted(limits.number("injections"), "injection")
+    return f"asked at the first measured visit of weeks {early} to {late} after {least}"
+
+
+def _values(v: Visits, row: int, base: int, column: str) -> list[dict[str, Any]]:
+    """Return the baseline's value and now's, where both are given."""
+    return saying.values(v, row, base, column) if base >= 0 else []
+
+
+def _letters_worked(v: Visits, row: int, base: int) -> list[str]:
+    if base < 0 or int(v.logmar_e4[row]) == MISSING:
+        return []
+    gained = (int(v.logmar_e4[base]) - int(v.logmar_e4[row])) / LETTER_E4
+    return [f"{gained:+g} letters".replace("-", "−")]
+
+
+def _scan_worked(v: Visits, row: int, base: int, limits: Table) -> list[str]:
+    if base < 0 or int(v.cst_um[row]) == MISSING:
+        return []
+    before, after = int(v.cst_um[base]), int(v.cst_um[row])
+    worked = [f"({after} − {before}) / {before} = {saying.percent(after - before, before)}"]
+    normal = limits.get(f"normal_um_{_klass(v, row)}") if _klass(v, row) else None
+    if normal is not None and before > normal:
+        gone = saying.percent(before - after, before - normal).removeprefix("+")
+        worked.append(f"({before} − {after}) / ({before} − {normal}) = {gone} of the excess gone")
+    return worked
+
+
+def _reference_value(v: Visits, judged: Judged, row: int, by_letters: bool) -> int | str | None:
+    """Return the baseline of the part that counts: in letters for that part, else in µm."""
+    ref = int(judged.ref[row])
+    if ref < 0:
+        return None
+    return str(saying.value(v, ref, "acuity")["value"]) if by_letters else int(v.cst_um[ref])
 
 
 def _klass(v: Visits, row: int) -> str:
     code = int(v.oct_class[row])
     return words.OCT_CLASSES[code] if code >= 0 else ""
-
-
-def _rows_compared(v: Visits, row: int) -> tuple[int | None, int | None]:
-    """Return the baseline rows of thickness and letters; None where none compares."""
-    first, c = FirstMonths(v), Comparisons(v, 0)
-    scan = int(first.last_at_zero(c.cst_key, c.cst_given & ~c.poor)[row])
-    counted = c.letters_given & (v.five_letter_chart == 1)
-    letters = int(first.last_at_zero(c.acuity_key, counted)[row])
-    has_scan = scan >= 0 and int(v.cst_um[row]) != MISSING
-    has_letters = letters >= 0 and int(v.logmar_e4[row]) != MISSING
-    return (scan if has_scan else None), (letters if has_letters else None)
 
 
 def _limit_words(limits: Table) -> str:

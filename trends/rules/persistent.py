@@ -14,7 +14,7 @@ import numpy as np
 
 from trends import crossing, fluid, saying, words
 from trends.comparisons import Comparisons
-from trends.first_months import FirstMonths, first_months
+from trends.first_months import first_months, since_first
 from trends.limits import Table
 from trends.ruling import Description, Judged, RuleInfo, bit, judged_one
 from trends.states import entered
@@ -48,14 +48,14 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     asked = first.known & (first.days >= limits.number("from_days"))
     asked &= (first.at_most >= least) & (diabetic | (v.cause < 0))
     known = c.cst_given & diabetic & (below | (enough & ~unsure))
-    state = entered(met & asked, known & below, np.diff(v.eye, prepend=-1) != 0)
+    state = entered(met & asked & c.followed, known & below, np.diff(v.eye, prepend=-1) != 0)
     missing: Ints = np.where(c.cst_given, 0, bit("cst_um"))
     for holds, column in (
-        (~enough, "agent"),
+        (~enough & ~below, "agent"),
         (v.cause < 0, "cause"),
-        (poor, "scan_quality"),
-        (between, "sex"),
-        (unlimited, "oct_class"),
+        (poor & ~below, "scan_quality"),
+        (between & ~below, "sex"),
+        (unlimited & ~below, "oct_class"),
     ):
         missing = missing | np.where(holds, bit(column), 0)
     return judged_one(
@@ -73,9 +73,7 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
 def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     """Put one row into words."""
     eye, now = saying.eye(v, row), int(v.cst_um[row])
-    first = FirstMonths(v)
-    day_zero, given = int(first.day_zero[row]), int(first.injections[row])
-    weeks = int(first.days[row]) // 7
+    first, given = since_first(v, row)
     limit_um = crossing.limit_at(v, limits, row, "m")
     limit = (
         f"every scan at or above {limit_um} µm to week {(limits.number('from_days') + 7) // 7}, "
@@ -83,24 +81,25 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     )
     if now == MISSING:
         return Description(f"{eye}: no CST recorded on {saying.day(v, row)}", limit=limit)
-    start = int(v.offsets[v.eye[row]])
-    rows = [
-        one
-        for one in range(start, row + 1)
-        if int(v.day[one]) >= day_zero and int(v.cst_um[one]) != MISSING
-    ]
-    if not rows:
+    if first < 0:
         return Description(
             f"{eye}: CST {now} µm on {saying.day(v, row)}, no injection recorded before",
             values=saying.values(v, row, -1, "cst_um"),
             limit=limit,
         )
+    start, day_zero = int(v.offsets[v.eye[row]]), int(v.day[first])
+    weeks = saying.counted((int(v.day[row]) - day_zero) // 7, "week")
+    rows = [
+        one
+        for one in range(start, row + 1)
+        if int(v.day[one]) >= day_zero and int(v.cst_um[one]) != MISSING
+    ]
     shown = ", ".join(str(int(v.cst_um[one])) for one in rows)
     since = int(judged.since[row]) if judged.since is not None else -1
     stands = f"; so since {saying.day(v, since)}" if since >= 0 else ""
     ref = int(judged.ref[row])
     return Description(
-        sentence=f"{eye}: CST {shown} µm over the {weeks} weeks since the first injection, "
+        sentence=f"{eye}: CST {shown} µm over the {weeks} since the first injection, "
         f"{saying.counted(given, 'injection')}{stands}{fluid.provisional(v, row)}",
         values=[saying.value(v, one, "cst_um") for one in rows],
         arithmetic=[f"lowest {min(int(v.cst_um[one]) for one in rows)} µm; limit {limit_um} µm"],

@@ -41,7 +41,7 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     rise = fluid.rise(v, c, limits, reference)
     met = rise.certain
     known = rise.judgeable & ~run.gap & ~(c.poor & ~met)
-    state = entered(met, known & ~met, (np.diff(v.eye, prepend=-1) != 0) | _opens(run))
+    state = entered(met & c.followed, known & ~met, (np.diff(v.eye, prepend=-1) != 0) | _opens(run))
     missing = rise.missing(rise.judgeable & ~met & c.poor)
     missing |= np.where(run.gap, bit("agent"), 0)
     return judged_one(

@@ -14,7 +14,7 @@ import numpy as np
 
 from trends import fluid, saying, slope
 from trends.comparisons import Comparisons
-from trends.like_scans import LikeScans
+from trends.like_scans import LikeScans, whole_weeks
 from trends.limits import Table
 from trends.ruling import Description, Judged, RuleInfo, bit, judged_one
 from trends.states import entered
@@ -32,26 +32,24 @@ INFO = RuleInfo(
 )
 
 
-def _like(v: Visits, c: Comparisons, limits: Table) -> LikeScans:
-    return LikeScans(v, c, limits.number("within_days"), limits.number("most"))
-
-
 def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     """Judge all visits at once; S is counted where there are enough like scans."""
-    like, least = _like(v, c, limits), limits.number("least")
-    rows = np.flatnonzero(like.count >= least)
-    needed = np.array([slope.least_s(n, limits.number("p_permille")) for n in range(like.most + 1)])
-    met = np.zeros(len(v), dtype=bool)
-    met[rows] = slope.kendall_s(like.values(rows)) >= needed[like.count[rows]]
+    least, most = limits.number("least"), limits.number("most")
+    like = LikeScans(v, c, limits.number("within_days"), least, most)
     enough = like.count >= least
-    state = entered(met, enough & ~met & ~c.poor, np.diff(v.eye, prepend=-1) != 0)
+    rows = np.flatnonzero(enough)
+    scans = like.scans(rows)
+    um = np.where(scans >= 0, v.cst_um[scans], np.nan)
+    needed = np.array([slope.least_s(n, limits.number("p_permille")) for n in range(most + 1)])
+    met = np.zeros(len(v), dtype=bool)
+    met[rows] = slope.kendall_s(um) >= needed[like.count[rows]]
+    state = entered(met & c.followed, enough & ~met & ~c.poor, np.diff(v.eye, prepend=-1) != 0)
     missing = np.where(c.cst_given, 0, bit("cst_um"))
     missing |= np.where(like.gap, bit("agent"), 0)
     missing |= np.where(c.cst_given & (c.cst_key < 0), bit("oct_class"), 0)
     missing |= np.where(enough & ~met & c.poor, bit("scan_quality"), 0)
-    earlier = like.window.order[like.window.end[rows] - (like.count[rows] - 1)]
     first = np.full(len(v), -1, dtype=np.int64)
-    first[rows] = earlier
+    first[rows] = scans[np.arange(rows.size), most - like.count[rows]]
     return judged_one(
         known=met | (enough & ~c.poor),
         applies=c.followed & (c.cst_given | c.measured_kind) & (like.recent | like.gap),
@@ -61,7 +59,7 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
         ref=first,
         missing=missing,
         since=state.since,
-        extra={"comparisons": c},
+        extra={"rows": rows, "scans": scans},
     )
 
 
@@ -80,18 +78,19 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
             values=saying.values(v, row, -1, "cst_um"),
             limit=limit,
         )
-    like = _like(v, judged.extra["comparisons"], limits)
-    rows = like.rows_of(row)
+    scans = judged.extra["scans"][np.searchsorted(judged.extra["rows"], row)]
+    rows = scans[scans >= 0]
     um, days = v.cst_um[rows].astype(float), v.day[rows].astype(float)
     s = int(slope.kendall_s(um[None, :])[0])
     a_year = slope.theil_sen(days, um) * DAYS_A_YEAR
-    agent = v.text("agents", int(like.treatment[row]))
-    weeks = (2 * int(like.days[row]) + 7) // 14
+    treatment = saying.last_treatment(v, row)
+    agent = v.text("agents", treatment)
+    weeks = saying.counted(whole_weeks(int(v.day[row] - v.day[treatment])), "week")
     shown = ", ".join(str(int(one)) for one in um)
     since = int(judged.since[row]) if judged.since is not None else -1
     stands = f", since {saying.day(v, since)}" if since >= 0 else ""
     return Description(
-        sentence=f"{eye}: CST {shown} µm over {rows.size} scans {weeks} weeks after {agent}, "
+        sentence=f"{eye}: CST {shown} µm over {rows.size} scans {weeks} after {agent}, "
         f"{a_year:+.0f} µm a year{stands}".replace("-", "−"),
         values=[saying.value(v, int(one), "cst_um") for one in rows],
         arithmetic=[
