@@ -201,3 +201,48 @@ def test_a_steroid_reading_shows_its_dates_and_what_came_back() -> None:
         "best no",
     ]
     assert told.reference_value == 300
+
+
+FLUID = ["week", "cst_um", "irf", "srf", "agent", "due_week"]
+
+
+def by_fluid(*visits: list[Any], **params: Any) -> Spoken:
+    case = {"regimen": "treat_and_extend", "columns": FLUID, "visits": list(visits)}
+    alone = {"loading": 1, "by_cst": False, "by_letters": False}
+    return spoken(opened(visits_of(case), "treat_and_extend", **alone, **params))
+
+
+def test_a_plan_shortened_by_its_own_step_and_extended_after_two_quiet_visits_says_so() -> None:
+    one = by_fluid(
+        [0, 300, "no", "no", "ranibizumab", 8],
+        [8, 300, "no", "yes", "ranibizumab", 15],
+        [15, 300, "no", "no", "ranibizumab", 22],
+        [22, 300, "no", "no", "ranibizumab", 31],
+        shorten_weeks=1,
+        inactive_visits_before_extending=2,
+    )
+    assert one.readings()[1:] == ["shorten to 7 weeks", "keep", "extend to 9 weeks"]
+    assert (
+        one.describe(3)
+        .arithmetic[-1]
+        .endswith(
+            "; shortened by 1; after worse, extended at quiet visit 2 running (before this: 1)"
+        )
+    )
+
+
+def test_a_plan_that_goes_back_to_the_last_dry_interval_names_it() -> None:
+    one = by_fluid(
+        [0, 300, "no", "no", "ranibizumab", 4],
+        [4, 300, "no", "no", "ranibizumab", 12],
+        [12, 300, "yes", "no", "ranibizumab", 16],
+        [16, 300, "yes", "yes", "ranibizumab", 20],
+        return_to_last_dry=True,
+    )
+    assert one.readings()[1:] == ["extend to 6 weeks", "shorten to 4 weeks", "keep"]
+    assert one.describe(2).arithmetic[-1].endswith("; back to the last dry interval, 4 weeks")
+    assert (
+        one.describe(3)
+        .arithmetic[-1]
+        .endswith("; back to the last dry interval, none below the plan")
+    )

@@ -76,7 +76,7 @@ class Matrix:
 
     @cached_property
     def weeks(self) -> Ints:
-        """The interval after the visit; valid where ``told``."""
+        """The interval after the visit; valid where a plan is known and the cells agree."""
         return self._weeks_span[0]
 
     @cached_property
@@ -86,11 +86,6 @@ class Matrix:
         each = np.broadcast_to(np.arange(len(CELLS))[:, None], self.next_weeks.shape)
         least, most = self._span(each)
         return np.asarray(np.where(self.plan.known, low != high, least != most))
-
-    @cached_property
-    def told(self) -> Bools:
-        """Whether the reading is known."""
-        return np.asarray(self.plan.known & ~self.open_)
 
 
 def possible_rows(r: Readings, reference: Ints, now: Ints, small: Ints, large: Ints) -> Bools:
