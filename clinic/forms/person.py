@@ -32,7 +32,7 @@ def letters(text: str) -> int:
 
 def regimen_choices(blank: str) -> list[tuple[str, str]]:
     """Return the regimens by title."""
-    return [("", blank), *((n, str(m.INFO.title)) for n, m in regimens.by_id().items())]
+    return [("", blank), *((n, str(m.INFO.title)) for n, m in regimens.of_courses().items())]
 
 
 class PersonForm(forms.Form):

@@ -113,5 +113,6 @@ def _readings(loaded: Loaded, reviewed: Reviewed, rows: Sequence[int]) -> dict[i
         for at, row in enumerate(spoken.rows.tolist()):
             place: Place | None = mine.get(row)
             if place is not None and said[at]:
-                found[place.visit_id] = said[at]
+                earlier = found.get(place.visit_id)
+                found[place.visit_id] = f"{earlier}; {said[at]}" if earlier else said[at]
     return found

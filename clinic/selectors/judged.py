@@ -189,10 +189,11 @@ def _reading(reviewed: Any, row: int, readings: Sequence[VerdictRow]) -> dict[st
     weeks = int(spoken.interval_weeks[at])
     return {
         "regimen": one.rule,
-        "reading": one.reading,
+        "reading": "; ".join(each.reading for each in readings),
         "place": spoken.place(row),
         "interval_weeks": weeks if weeks >= 0 else None,
-        "sentence": one.sentence,
+        "sentence": ". ".join(each.sentence for each in readings),
         "missing": list(one.missing),
         "working": one.working,
+        "beside": [each.working for each in readings[1:]],
     }

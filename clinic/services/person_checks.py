@@ -71,7 +71,7 @@ def event_checked(kind: str, day: dt.date, today: dt.date) -> None:
 
 def course_checked(values: Mapping[str, Any], today: dt.date) -> None:
     """Refuse an unknown regimen, a course to come, or one without a reason."""
-    word_checked("regimen", values.get("regimen", ""), ["", *regimens.by_id()])
+    word_checked("regimen", values.get("regimen", ""), ["", *regimens.of_courses()])
     day_checked("first day of the course", values["from_day"], today)
     reason_given(
         values.get("reason", ""),

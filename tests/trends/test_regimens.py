@@ -19,6 +19,10 @@ FILES = (
     "personal_interval",
     "implant",
     "treat_and_extend_forms",
+    "as_needed_vision",
+    "as_needed_rvo",
+    "watch_until_loss",
+    "switch_criteria",
 )
 COURSES = [case for file in FILES for case in cases(file)]
 
@@ -26,7 +30,9 @@ COURSES = [case for file in FILES for case in cases(file)]
 def spoken_of(case: dict[str, Any]) -> dict[str, Spoken]:
     regimen = case.get("regimen", "as_needed_stability")
     limits = limits_with(case.get("settings", {}), regimen)
-    return review(visits_of(case), limits, AS_OF, words.REGIMENS).regimens
+    # What is read beside a course has cases of its own.
+    asked = [case["reads"]] if "reads" in case else words.REGIMENS
+    return review(visits_of(case), limits, AS_OF, asked).regimens
 
 
 def readings_of(spoken: dict[str, Spoken], size: int) -> list[str]:

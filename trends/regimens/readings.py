@@ -31,6 +31,12 @@ class Said(IntEnum):
     REACHED = 14
     REACHED_RECURRENT = 15
     REACHED_UNKNOWN = 16
+    WITHHOLD_IF_CONFIRMED = 17
+    START = 18
+    WATCH = 19
+    WATCH_ONCE = 20
+    SWITCH_MET = 21
+    SWITCH_NOT_MET = 22
 
 
 WORDS = {
@@ -50,6 +56,12 @@ WORDS = {
     Said.RECURRENT_BEFORE: "recurrent, before the trial interval of {} days",
     Said.REACHED: "trial interval of {} days reached, no recurrence",
     Said.REACHED_RECURRENT: "trial interval of {} days reached, recurrent",
+    Said.WITHHOLD_IF_CONFIRMED: "criteria to withhold met if a clinician confirms stability",
+    Said.START: "criteria to start met",
+    Said.WATCH: "criteria to start not met",
+    Said.WATCH_ONCE: "criteria to start not met, 5 to 9 letters lost once",
+    Said.SWITCH_MET: "switch criteria met",
+    Said.SWITCH_NOT_MET: "switch criteria not met",
     Said.REACHED_UNKNOWN: "trial interval of {} days reached, recurrence not known",
 }
 """The words of each reading, its numbers in order; a number that is NONE is "not known"."""
