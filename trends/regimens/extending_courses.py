@@ -7,8 +7,7 @@ from typing import Any
 import numpy as np
 
 from trends.limits import Table
-from trends.plans import plans
-from trends.regimens.courses import NONE, Bools, Ints, whole_weeks
+from trends.regimens.courses import NONE, Bools, Ints
 from trends.regimens.extending import (
     FLUID_NO,
     FLUID_UNSURE,
@@ -16,16 +15,14 @@ from trends.regimens.extending import (
     NOT_GRADED,
     Extending,
     Judged,
-    Treated,
 )
 from trends.regimens.pairs import Change, cst_lacks, letters_lack
-from trends.regimens.planned import ONLY_SHORTEN
+from trends.regimens.planned import Planned
 from trends.regimens.readings import Said
 from trends.regimens.spoken import AtPositions
 from trends.regimens.truth import NO, UNKNOWN, YES, Truth
 from trends.regimens.visited import Visited
 from trends.ruling import bit
-from trends.visits import MISSING
 
 GRADES = {"no": FLUID_NO, "yes": FLUID_YES, "unsure": FLUID_UNSURE, "not_graded": NOT_GRADED}
 
@@ -38,24 +35,16 @@ class ExtendingCourses:
     limits: Table
 
     @cached_property
+    def plan(self) -> Planned:
+        """Injections and due days."""
+        return Planned(self.visited, self._number("loading"), self._number("late_days"))
+
+    @cached_property
     def judged(self) -> Judged:
-        """The comparison and the plan of each visit."""
+        """The comparison of each visit and what it makes of the plan."""
         w, v = self.visited, self.visited.v
-        due_day = plans(v).due_day[w.at]
-        treated = Treated(
-            day=w.day,
-            injected=w.injected,
-            not_recorded=w.not_recorded,
-            due_set=due_day != MISSING,
-            due_day=due_day,
-            only_shortens=w.kind_is(*ONLY_SHORTEN),
-            silent=w.skipped,
-            values_at=w.values_at,
-            irf=w.grade(v.irf, GRADES, NOT_GRADED),
-            srf=w.grade(v.srf, GRADES, NOT_GRADED),
-            earlier_injections=w.earlier_injections(self._number("loading")),
-        )
-        return Judged(w.courses, w.readings, treated, self.params)
+        irf, srf = (w.grade(grades, GRADES, NOT_GRADED) for grades in (v.irf, v.srf))
+        return Judged(self.plan, irf, srf, self.params)
 
     @cached_property
     def params(self) -> Extending:
@@ -79,17 +68,6 @@ class ExtendingCourses:
     def _number(self, name: str) -> Any:
         return self.visited.parameter(self.limits, name)
 
-    @cached_property
-    def loading(self) -> Bools:
-        """Whether the course is still loading at the visit."""
-        loading: Bools = self.judged.injections < self.params.loading
-        return loading
-
-    @cached_property
-    def history_unknown(self) -> Bools:
-        """Whether the count is still open because nobody entered what came before the log."""
-        return np.asarray(self.visited.history_unknown & self.loading)
-
     # What is missing ---------------------------------------------------------------------------
 
     def _parts_lack(self, parts: dict[str, Truth]) -> Ints:
@@ -107,20 +85,20 @@ class ExtendingCourses:
         """Bits of the columns that keep the reading from an answer, loading apart."""
         j = self.judged
         bits = np.where(j.worse == UNKNOWN, self._parts_lack(j.worse_parts), 0)
-        planned = j.plan_set_at != NONE
+        planned = self.plan.known
         holding = planned & (j.worse == NO) & (j.extend == UNKNOWN)
         bits |= np.where(holding, self._parts_lack(j.holding_parts), 0)
         bits |= np.where(planned, 0, bit("due_date"))
-        bits = np.where(self.loading, 0, bits)
-        bits = np.where(self.history_unknown, bit("hist_treatments"), bits)
-        return np.where(j.agent_unknown, bit("agent"), bits)
+        bits = np.where(self.plan.still_loading, 0, bits)
+        bits = np.where(self.plan.history_unknown, bit("hist_treatments"), bits)
+        return np.where(self.plan.agent_unknown, bit("agent"), bits)
 
     # The reading -------------------------------------------------------------------------------
 
     @cached_property
     def shortens(self) -> Bools:
         """Worse, with room below the plan."""
-        room: Bools = self.judged.shorter_weeks < self.judged.planned_weeks
+        room: Bools = self.judged.shorter_weeks < self.plan.weeks
         return np.asarray(room & (self.judged.worse == YES))
 
     @cached_property
@@ -130,7 +108,8 @@ class ExtendingCourses:
         shorten = np.where(j.late, Said.SHORTEN_LATE, Said.SHORTEN)
         extends = (j.worse == NO) & (j.extend == YES)
         after = np.where(self.shortens, shorten, np.where(extends, Said.EXTEND, Said.KEEP))
-        return np.where(self.lacks > 0, Said.CANT_TELL, np.where(self.loading, Said.LOADING, after))
+        told = np.where(self.plan.still_loading, Said.LOADING, after)
+        return np.where(self.lacks > 0, Said.CANT_TELL, told)
 
     @cached_property
     def last_dry_weeks(self) -> Ints:
@@ -145,54 +124,36 @@ class ExtendingCourses:
         load, extend = said == Said.LOADING, said == Said.EXTEND
         late = said == Said.SHORTEN_LATE
         shorter = np.where((said == Said.SHORTEN) | late, j.shorter_weeks, 0)
-        first = np.where(load, j.injections + 1, np.where(extend, j.longer_weeks, shorter))
+        first = np.where(load, self.plan.injections + 1, np.where(extend, j.longer_weeks, shorter))
         second = np.where(load, self.params.loading, np.where(late, j.actual_weeks, 0))
         return AtPositions(
             said=said,
             numbers=(first, second, np.where(late, self.last_dry_weeks, 0)),
             missing=self.lacks,
             ref=j.last,
-            interval_weeks=self.interval_after,
+            interval_weeks=self.plan.weeks_after,
         )
 
     # The place after the visit ------------------------------------------------------------------
 
-    @cached_property
-    def unknown_after(self) -> Bools:
-        """Whether the last treatment isn't known after the visit."""
-        unknown: Bools = self.visited.not_recorded | (
-            self.judged.agent_unknown & ~self.visited.injected
-        )
-        return unknown
-
-    @cached_property
-    def interval_after(self) -> Ints:
-        """Planned weeks from the last treatment to the due day in force after the visit."""
-        j, w, t = self.judged, self.visited, self.judged.treated
-        last = np.where(w.injected, w.courses.at, j.last)
-        plan = np.where(t.due_set, w.courses.at, np.where(w.injected, NONE, j.plan_set_at))
-        weeks = whole_weeks(t.due_day[plan] - w.day[last])
-        known = (plan != NONE) & (last != NONE) & ~self.unknown_after
-        return np.where(known, weeks, NONE)
-
     def place(self, p: int) -> str:
         """Where the course stands after the visit at a position."""
-        if self.unknown_after[p]:
+        if self.plan.unknown_after[p]:
             return "treatment not recorded"
-        if self.history_unknown[p]:
+        if self.plan.history_unknown[p]:
             return "history not entered"
         loading = int(np.broadcast_to(self.params.loading, self.visited.day.size)[p])
-        count = int(self.judged.injections[p] + self.visited.injected[p])
+        count = int(self.plan.injections[p] + self.visited.injected[p])
         if count <= loading:
             return f"loading {count} of {loading}"
         return self._interval_place(p)
 
     def _interval_place(self, p: int) -> str:
-        weeks, j = int(self.interval_after[p]), self.judged
+        weeks = int(self.plan.weeks_after[p])
         if weeks == NONE:
             return "next visit not planned"
-        if not self.visited.injected[p] or j.plan_set_at[p] == NONE:
+        if not self.visited.injected[p] or not self.plan.known[p]:
             return f"planned at {weeks} weeks"
-        before = int(j.planned_weeks[p])
+        before = int(self.plan.weeks[p])
         verb = "extended to" if weeks > before else "shortened to" if weeks < before else "kept at"
         return f"{verb} {weeks} weeks"

@@ -2,6 +2,7 @@
 
 from trends.regimens.courses import NONE
 from trends.regimens.extending_courses import ExtendingCourses
+from trends.regimens.plan_words import plan_line, reference_value
 from trends.regimens.readings import Said, reading_text
 from trends.regimens.spoken import RegimenInfo
 from trends.regimens.telling import (
@@ -38,9 +39,7 @@ def describe(courses: ExtendingCourses, p: int, info: RegimenInfo) -> Descriptio
         unknowns=open_choices(courses.limits, info),
         options=list(OPTIONS),
         not_for=list(info.not_for),
-        reference_value=int(w.readings.cst_um[reference])
-        if w.readings.has_cst[reference]
-        else None,
+        reference_value=reference_value(w, reference),
     )
 
 
@@ -50,7 +49,7 @@ def _why(courses: ExtendingCourses, p: int) -> str:
     if told.said[p] == Said.CANT_TELL:
         return missing_words(int(told.missing[p]))
     if told.said[p] == Said.LOADING:
-        return f"injections in this course so far: {int(j.injections[p])}"
+        return f"injections in this course so far: {int(j.plan.injections[p])}"
     when = date_words(int(courses.visited.day[j.last[p]]))
     seen = changes(courses.visited, int(j.reference[p]), p)
     return f"{_reasons(courses, p)}{seen} since the last treatment visit, {when}"
@@ -68,7 +67,7 @@ def _reasons(courses: ExtendingCourses, p: int) -> str:
 
 def _arithmetic(courses: ExtendingCourses, p: int) -> list[str]:
     j, w = courses.judged, courses.visited
-    lines = [f"injections of this course before the visit: {int(j.injections[p])}"]
+    lines = [f"injections of this course before the visit: {int(j.plan.injections[p])}"]
     if courses.told.said[p] == Said.LOADING or j.last[p] == NONE:
         return lines
     lines.append("against the last treatment visit, " + compared(w, int(j.reference[p]), p))
@@ -87,20 +86,15 @@ def _answers(courses: ExtendingCourses, p: int) -> list[str]:
 
 
 def _plan_line(courses: ExtendingCourses, p: int) -> str:
-    j, w, params = courses.judged, courses.visited, courses.params
-    if j.plan_set_at[p] == NONE:
-        return "planned interval: no due date set since the last treatment"
-    due = int(j.treated.due_day[j.plan_set_at[p]])
-    last = int(w.day[j.last[p]])
-    off = int(j.days_off_plan[p])
-    line = (
-        f"planned interval: {date_words(last)} to {date_words(due)} = {due - last} days = "
-        f"{int(j.planned_weeks[p])} weeks (half up); visit {abs(off)} days "
-        f"{'after' if off > 0 else 'before' if off < 0 else 'off'} the due day "
-        f"(allowed {number_at(params.late_days, p)}); step {number_at(params.step_weeks, p)}, "
-        f"least {number_at(params.least_weeks, p)}, most {number_at(params.most_weeks, p)} weeks"
+    params, plan = courses.params, courses.plan
+    line = plan_line(
+        plan,
+        p,
+        step=number_at(params.step_weeks, p),
+        least=number_at(params.least_weeks, p),
+        most=number_at(params.most_weeks, p),
     )
-    return line + _other_steps(courses, p)
+    return line + _other_steps(courses, p) if plan.known[p] else line
 
 
 def _other_steps(courses: ExtendingCourses, p: int) -> str:
