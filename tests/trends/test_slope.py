@@ -1,5 +1,6 @@
 """Trends of few values against scipy where they agree by theory, by enumeration below that."""
 
+import functools
 import itertools
 import random
 
@@ -51,6 +52,46 @@ def test_the_least_s_is_the_first_that_is_rare_enough() -> None:
     assert slope.least_s(5, 50) == 10
     # Four values can't reach p 0.05 (least p 2/24): none of theirs is ever enough.
     assert slope.least_s(4, 50) == 7
+
+
+def by_ties(sizes: tuple[int, ...]) -> dict[int, int]:
+    """How many orders of values tied in groups of these sizes have each S, smallest value first."""
+    if not any(sizes):
+        return {0: 1}
+    found: dict[int, int] = {}
+    for place, size in enumerate(sizes):
+        if size:
+            left = (*sizes[:place], size - 1, *sizes[place + 1 :])
+            later = sum(left[place + 1 :]) - sum(left[:place])
+            for s, count in by_ties_kept(left).items():
+                found[s + later] = found.get(s + later, 0) + count
+    return found
+
+
+by_ties_kept = functools.cache(by_ties)
+
+
+def groupings(n: int) -> list[tuple[int, ...]]:
+    """All ways n values in order can fall into tied groups."""
+    if not n:
+        return [()]
+    return [(one, *rest) for one in range(1, n + 1) for rest in groupings(n - one)]
+
+
+@pytest.mark.parametrize("n", [5, 6, 7, 8, 9, 10])
+def test_whatever_is_tied_no_more_than_one_in_twenty_is_called_a_trend(n: int) -> None:
+    for sizes in groupings(n):
+        counted = by_ties_kept(sizes)
+        beyond = sum(count for s, count in counted.items() if slope.p_value(n, abs(s)) <= 0.05)
+        assert 20 * beyond <= sum(counted.values()), sizes
+
+
+def test_an_s_that_only_ties_make_has_the_p_of_the_next_smaller() -> None:
+    # Six values have 15 pairs: S is odd without ties. 13 pairs in order, one out, one tied: 12.
+    values = np.array([[435.0, 475, 472, 475, 486, 490]])
+    assert slope.kendall_s(values).tolist() == [12]
+    assert slope.p_value(6, 12) == slope.p_value(6, 11) == pytest.approx(0.0556, abs=0.0001)
+    assert slope.p_value(6, 0) == 1
 
 
 def test_below_five_values_nothing_is_told() -> None:

@@ -64,7 +64,7 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
         raised=state.raised,
         still=state.still,
         rank=str(limits["rank"]),
-        ref=first.last_at_zero(c.cst_key, c.cst_given & ~c.poor),
+        ref=np.where(c.cst_given, first.last_at_zero(c.cst_key, c.cst_given & ~c.poor), -1),
         missing=missing,
         since=state.since,
     )

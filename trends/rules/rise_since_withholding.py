@@ -50,7 +50,7 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
         raised=state.raised,
         still=state.still,
         rank=str(limits["rank"]),
-        ref=run.reference,
+        ref=np.where(c.cst_given, run.reference, -1),
         missing=missing,
         since=state.since,
     )

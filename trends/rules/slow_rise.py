@@ -81,7 +81,6 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     scans = judged.extra["scans"][np.searchsorted(judged.extra["rows"], row)]
     rows = scans[scans >= 0]
     um, days = v.cst_um[rows].astype(float), v.day[rows].astype(float)
-    s = int(slope.kendall_s(um[None, :])[0])
     a_year = slope.theil_sen(days, um) * DAYS_A_YEAR
     treatment = saying.last_treatment(v, row)
     agent = v.text("agents", treatment)
@@ -91,14 +90,11 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     stands = f", since {saying.day(v, since)}" if since >= 0 else ""
     return Description(
         sentence=f"{eye}: CST {shown} µm over {rows.size} scans {weeks} after {agent}, "
-        f"{a_year:+.0f} µm a year{stands}".replace("-", "−"),
+        f"{_signed(a_year, 0)} µm a year{stands}",
         values=[saying.value(v, int(one), "cst_um") for one in rows],
         arithmetic=[
-            f"Mann-Kendall S = {s} of {rows.size * (rows.size - 1) // 2} pairs, exact two-sided "
-            f"p = {slope.p_value(rows.size, s):.4f}".replace("= -", "= −"),
-            f"Theil-Sen: median of the slopes of all pairs = {a_year:+.1f} µm a year".replace(
-                "-", "−"
-            ).replace("Theil−Sen", "Theil-Sen"),
+            _tested(um),
+            f"Theil-Sen: median of the slopes of all pairs = {_signed(a_year, 1)} µm a year",
         ],
         limit=limit,
         noise=fluid.noise_words(v, limits, row, ref),
@@ -111,3 +107,17 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
         not_for=["scans at another time since treatment, or after another agent"],
         reference_value=int(v.cst_um[ref]),
     )
+
+
+def _signed(number: float, digits: int) -> str:
+    return f"{number:+.{digits}f}".replace("-", "−")
+
+
+def _tested(um: slope.Reals) -> str:
+    """Return the test of one row's scans with its numbers."""
+    s, pairs = int(slope.kendall_s(um[None, :])[0]), um.size * (um.size - 1) // 2
+    counted = slope.counted_as(um.size, abs(s))
+    tied = f" (with ties, counted as {counted})" if counted != abs(s) else ""
+    shown = str(s).replace("-", "−")
+    p = slope.p_value(um.size, s)
+    return f"Mann-Kendall S = {shown} of {pairs} pairs{tied}, exact two-sided p = {p:.4f}"
