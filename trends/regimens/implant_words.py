@@ -111,4 +111,4 @@ def place(courses: ImplantCourses, p: int) -> str:
         history = "history not entered" if courses.history_unknown[p] else "no steroid yet"
         return "treatment not recorded" if unsure else history
     until = date_words(int(w.day[last] + courses.days_of[last]))
-    return f"{w.v.text('agents', int(w.at[last]))}, trial interval until {until}"
+    return f"trial interval until {until}"
