@@ -6,10 +6,13 @@ from trends.regimens.courses import NONE, Bools, Courses, Ints
 
 
 def quiet_before(courses: Courses, quiet: Bools, breaks: Bools) -> Ints:
-    """Return how many quiet visits running came just before each; ``breaks`` ends a run."""
+    """Return how many quiet visits running came just before each.
+
+    ``breaks`` ends a run; a visit is never both.
+    """
     total = courses.count_before(quiet)
     last = courses.last_before(breaks)
-    run: Ints = total - np.where(last == NONE, 0, total[last] + quiet[last])
+    run: Ints = total - np.where(last == NONE, 0, total[last])
     return run
 
 
