@@ -49,6 +49,23 @@ def test_week_twelve_can_not_be_placed_when_the_first_injection_was_before_the_l
     one = spoken(v)
     assert one.readings() == ["loading 3 of 3", *["couldn't tell"] * 3]
     assert columns_of(int(one.missing[3])) == ("hist_treatments",)
+    assert one.ref.tolist() == [-1] * 4
+    after_one = spoken(with_history(course("long_interval", *LOADED), treatments=1))
+    assert after_one.readings()[2:] == ["couldn't tell", "couldn't tell"]
+
+
+def test_a_long_reading_is_judged_against_week_twelve_once_its_window_has_closed() -> None:
+    days = [[16 + (day + 0.5) / 7, 61, 372, "none", ""] for day in (2, 3)]  # days 114 and 115
+    v = course("long_interval", *LOADED, *days)
+    wide = spoken(opened(v, "long_interval", window_days=30))  # 84 + 30 = 114
+    assert wide.readings()[-2:] == ["keep", "shorten to 8 weeks"]
+    assert wide.ref.tolist() == [-1, -1, -1, -1, -1, 3]
+    assert spoken(v).readings()[-2:] == ["shorten to 8 weeks"] * 2
+
+
+def test_a_long_reading_has_no_reference_where_the_treatment_is_not_recorded() -> None:
+    more = [[20, 72, 320, "", 32], [24, 72, 320, "none", ""]]
+    assert spoken(course("long_interval", *LOADED, *more)).ref.tolist() == [-1, -1, -1, -1, 3, -1]
 
 
 def test_a_history_nobody_entered_leaves_the_loading_of_a_long_interval_open() -> None:
@@ -149,7 +166,7 @@ def test_a_personal_reading_shows_its_cell_and_the_mean_of_the_best_letters() ->
         "225 / 3 = 75.0, now 69: 6.0 lost)"
     )
     assert told.arithmetic[-2] == (
-        "matrix for under 5, 5 to 10, 10 letters lost or more: "
+        "matrix for under 5, 5 to under 10, 10 or more letters lost: "
         "rise beyond 10 %: keep, −4 weeks, −8 weeks"
     )
 

@@ -114,7 +114,7 @@ def _matrix_line(courses: PersonalCourses, p: int) -> str:
     some, many = (number_at(number(name), p) for name in ("letters", "letters_many"))
     rows = [row for row in range(len(ROWS)) if matrix.rows[row, p]]
     cells = "; ".join(f"{worded[row]}: {_cells(courses, row, p)}" for row in rows)
-    return f"matrix for under {some}, {some} to {many}, {many} letters lost or more: {cells}"
+    return f"matrix for under {some}, {some} to under {many}, {many} or more letters lost: {cells}"
 
 
 def _cells(courses: PersonalCourses, row: int, p: int) -> str:
