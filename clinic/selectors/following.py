@@ -64,6 +64,26 @@ def awaiting(here: Here, today: dt.date) -> list[Waiting]:
     return sorted(found, key=lambda one: (-one.days, one.now.eye.patient.code))
 
 
+def unanswered(here: Here, today: dt.date) -> list[Waiting]:
+    """Return eyes with something raised first that nobody answered since yesterday, oldest first.
+
+    What counts as unanswered is the rule's own; without an adopted set the floor still raises.
+    """
+    rows = [now for now in active_eyes(here) if now.unanswered_since is not None]
+    standing = standing_items(rows, here.site, today)
+    found = [
+        Waiting(
+            now,
+            SIDE_WORDS[now.eye.side],
+            SIDE_SLUGS[now.eye.side],
+            (today - (now.unanswered_since or today)).days,
+        )
+        for now in rows
+        if any(item["rule"] == "unanswered" for item in standing.get(now.eye_id, []))
+    ]
+    return sorted(found, key=lambda one: (-one.days, one.now.eye.patient.code))
+
+
 def gone_quiet(here: Here, today: dt.date) -> list[Quiet]:
     """Return eyes that are late, did not come, are away, or have no plan.
 
@@ -75,7 +95,7 @@ def gone_quiet(here: Here, today: dt.date) -> list[Quiet]:
     entries = ContactEntry.objects.filter(eye__patient__site=here.site).order_by("visit__day")
     for eye_id, day in entries.values_list("eye_id", "visit__day"):
         contacts[eye_id] = day
-    wanted = ("did_not_come", "late", "break_off", "away", "no_plan")
+    wanted = ("did_not_come", "late", "break_off", "away", "no_plan", "pressure_check_due")
     found = []
     for now in rows:
         items = [item for item in standing.get(now.eye_id, []) if item["rule"] in wanted]

@@ -28,7 +28,11 @@ def _cells(now: EyeNow, site: Site, said: Any, ahead: dict[dt.date, int]) -> dic
     """Return one eye as one row: its last attended visit, and the plan after it."""
     last = now.last_visit_day
     if last is None:
-        return {"kind": words.KINDS.index("contact"), "due_day": _day(now.due_day)}
+        return {
+            "kind": words.KINDS.index("contact"),
+            "due_day": _day(now.due_day),
+            "unanswered_day": _day(now.unanswered_since),
+        }
     if last not in ahead:
         found = next_clinic_day(site, last, said)
         ahead[last] = day_number(found) if found else MISSING
@@ -42,6 +46,11 @@ def _cells(now: EyeNow, site: Site, said: Any, ahead: dict[dt.date, int]) -> dic
         # The projection keeps whether the last visit awaits a decision; any measured value says so.
         "iop_tenths": 0 if now.undecided_since == last else MISSING,
         "decided": int(now.undecided_since != last),
+        # 0: the whole log was read and holds none.
+        "steroid_day": day_number(now.steroid_day) if now.steroid_day else 0,
+        "lasting_steroid": int(now.lasting_steroid),
+        "iop_day": _day(now.last_iop_day),
+        "unanswered_day": _day(now.unanswered_since),
     }
 
 

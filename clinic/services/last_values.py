@@ -6,6 +6,8 @@ from typing import Any
 from clinic.adapters import Loaded
 from trends import words
 from trends.comparisons import Comparisons
+from trends.measures import agents
+from trends.rules.pressure_check_due import LASTING
 from trends.visits import MISSING, Visits
 
 Fields = dict[str, Any]
@@ -32,7 +34,19 @@ def visit_fields(loaded: Loaded, c: Comparisons, rows: Sequence[int]) -> Fields:
     if treated:
         fields["last_treated_day"] = places[treated[-1]].day
         fields["last_agent"] = v.text("agents", treated[-1])
-    return fields | _last_values(loaded, c, attended)
+    return fields | _steroid(loaded, treated) | _last_values(loaded, c, attended)
+
+
+def _steroid(loaded: Loaded, treated: Sequence[int]) -> Fields:
+    """Return the day of the last steroid, and whether one that lasts for years was ever given."""
+    texts = {row: loaded.visits.text("agents", row) for row in treated}
+    given = [row for row in treated if agents.is_steroid(texts[row])]
+    if not given:
+        return {}
+    return {
+        "steroid_day": loaded.places[given[-1]].day,
+        "lasting_steroid": any(LASTING in texts[row].split("+") for row in given),
+    }
 
 
 def _is_measured(v: Visits, row: int) -> bool:
@@ -61,6 +75,7 @@ def _last_values(loaded: Loaded, c: Comparisons, rows: Sequence[int]) -> Fields:
         fields |= _acuity(loaded, c, seen[-1])
     pressures = [row for row in rows if int(v.iop_tenths[row]) != MISSING]
     if pressures:
+        fields["last_iop_day"] = places[pressures[-1]].day
         fields |= _pressure(loaded, pressures)
     return fields
 

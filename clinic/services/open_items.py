@@ -54,6 +54,7 @@ def open_fields(reviews: Sequence[Review], answers: Sequence[Answer]) -> Fields:
     open_ranks = [item["rank"] for item in items if not item.get("stands")]
     top = next((rank for rank in RANKS if rank in open_ranks), "")
     told = [dt.date.fromisoformat(item["visit_day"]) for item in items if _is_told(item)]
+    waiting = [dt.date.fromisoformat(item["visit_day"]) for item in items if _waits(item)]
     outcomes = list(last.outcomes.values())
     reading: Fields = next((one.reading for one in reversed(reviews) if one.reading), {})
     from_day = next((one.visit.day for one in reversed(reviews) if one.reading), None)
@@ -69,6 +70,7 @@ def open_fields(reviews: Sequence[Review], answers: Sequence[Answer]) -> Fields:
         ],
         "open_top_rank": top,
         "alarm_since": min(told, default=None),
+        "unanswered_since": min(waiting, default=None),
         "reading": str(reading.get("reading", ""))[:160],
         "reading_from": from_day,
         "place": str(reading.get("place", ""))[:60],
@@ -80,6 +82,12 @@ def _is_told(item: Fields) -> bool:
     return item["rule"] == TOLD and item["alarm"] and not item.get("stands")
 
 
+def _waits(item: Fields) -> bool:
+    """Say whether an item raised first has no answer that stands; history taken in isn't asked."""
+    first = item["rank"] == RANKS[0] and not item["from_intake"]
+    return first and not item.get("stands")
+
+
 def _item(row: Mapping[str, Any], review: Review, said: Fields) -> Fields:
     return {
         "rule": row["rule"],
@@ -89,5 +97,6 @@ def _item(row: Mapping[str, Any], review: Review, said: Fields) -> Fields:
         "visit_kind": review.visit.kind,
         "eye": row["eye"],
         "alarm": is_alarm(row),
+        "from_intake": review.visit.from_intake_id is not None,
         **said,
     }

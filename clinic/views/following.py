@@ -14,7 +14,7 @@ from clinic.forms.fields import sentence
 from clinic.forms.person import ContactForm
 from clinic.models import Answer, ContactEntry, EyeNow, Patient
 from clinic.selectors.access import CLINICIAN, WRITERS, Here, eye_for, patient_for, site_for
-from clinic.selectors.following import awaiting, contacts, gone_quiet
+from clinic.selectors.following import awaiting, contacts, gone_quiet, unanswered
 from clinic.services.following import answer_record
 from clinic.services.parts import EyePart, part_save
 from trends.errors import EbblineError
@@ -22,10 +22,10 @@ from trends.errors import EbblineError
 
 @require_safe
 def show_awaiting(request: HttpRequest, slug: str) -> HttpResponse:
-    """Show what was measured and not decided, with its age."""
-    here = site_for(request.user, slug)
-    rows = awaiting(here, timezone.localdate())
-    return render(request, "following/awaiting.html", {"here": here, "rows": rows})
+    """Show what was measured and not decided, and what was raised first and not answered."""
+    here, today = site_for(request.user, slug), timezone.localdate()
+    context = {"here": here, "rows": awaiting(here, today), "waiting": unanswered(here, today)}
+    return render(request, "following/awaiting.html", context)
 
 
 @require_safe

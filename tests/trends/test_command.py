@@ -51,7 +51,7 @@ def test_verdicts_stand_in_order_with_the_stated_columns(tmp_path: Path) -> None
     assert list(dict.fromkeys(places)) == [("a", "R"), ("b", "R"), ("b", "L")]
     mine = [row for row in rows if (row["person"], row["eye"]) == ("b", "R")]
     days = [row["date"] for row in mine]
-    assert days == sorted(days) and mine[-1]["rule"] == "undecided"
+    assert days == sorted(days) and mine[-1]["rule"] == "unanswered"
     first_day = [row["rule"] for row in mine if row["date"] == days[0]]
     assert first_day == [module.INFO.id for module in registry.VISIT_RULES]
 

@@ -48,6 +48,7 @@ RAISED: dict[str, tuple[dict[str, str], dict[str, str]]] = {
         {"acuity": "CF", "acuity_notation": "off_chart"},
     ),
     "pressure": ({"iop_mmhg": "14"}, {"iop_mmhg": "30"}),
+    "pressure_low": ({"iop_mmhg": "14"}, {"iop_mmhg": "5"}),
     "pressure_after": ({}, {"agent": "aflibercept", "iop_after_mmhg": "30"}),
     "alarm_symptoms": ({}, {"symptoms": "pain"}),
     "too_soon": ({"agent": "aflibercept"}, {"agent": "aflibercept"}),
@@ -69,6 +70,7 @@ RAISED: dict[str, tuple[dict[str, str], dict[str, str]]] = {
     "unlikely_jump": ({"cst_um": "305", **SCAN}, {"cst_um": "671", **SCAN}),
     "unit_doubt": ({"cst_um": "300", **SCAN}, {"cst_um": "119", **SCAN}),
     "poor_scan": ({"cst_um": "300"}, {"cst_um": "300", "scan_quality": "poor"}),
+    "both_thickening": ({"cst_um": "300", **SCAN}, {"cst_um": "340", **SCAN}),
     # Nothing after the second visit until the day asked: due, late, away, without a next plan.
     "did_not_come": ({}, {"due_date": "2026-03-01", "agent": "none"}),
     "late": ({}, {"due_date": "2026-03-01", "agent": "none"}),
@@ -76,6 +78,7 @@ RAISED: dict[str, tuple[dict[str, str], dict[str, str]]] = {
     "away": ({}, {"due_date": "2026-03-01", "agent": "none"}),
     "no_plan": ({}, {"agent": "none"}),
     "undecided": ({}, {"cst_um": "300"}),
+    "pressure_check_due": ({}, {"agent": "dexamethasone"}),
 }
 # The fellow eye's cells at the second visit, where a rule looks at both eyes.
 FELLOW = {
@@ -83,6 +86,7 @@ FELLOW = {
     "same_lot_both_eyes": {"agent": "aflibercept", "lot": "a1"},
     "same_in_both_eyes": {"cst_um": "312", **SCAN},
     "looks_like_other_eye": {"cst_um": "300", **SCAN},
+    "both_thickening": {"cst_um": "400", **SCAN},
 }
 # Earlier visits of the eye, where two don't make a history.
 BEFORE: dict[str, list[dict[str, str]]] = {
@@ -113,6 +117,7 @@ BEFORE: dict[str, list[dict[str, str]]] = {
         for eye, um in (("R", right), ("L", left))
         if um
     ],
+    "both_thickening": [{**SCAN, "date": "2025-12-01", "eye": "L", "cst_um": "350"}],
     "transposed": [
         {"date": "2025-11-01", "cst_um": "340", **SCAN},
         {"date": "2025-12-01", "cst_um": "345", **SCAN},
@@ -149,7 +154,8 @@ def second_visit(rule: str, **also: str) -> VerdictRow:
 
 
 def test_every_rule_has_an_example_and_known_sources() -> None:
-    assert list(RAISED) == list(RULES)
+    # A tidy file keeps no answers: unanswered is raised by what the app hands in (its own test).
+    assert [*RAISED, "unanswered"] == list(RULES)
     for module in (*RULES.values(), *regimens.by_id().values()):
         assert module.INFO.cites, module.INFO.id
         assert set(module.INFO.cites) <= set(citations()), module.INFO.id

@@ -153,6 +153,8 @@ DECIDING = {
     "letters_lost": ["acuity"],
     "off_chart_step": ["acuity"],
     "pressure": ["iop_mmhg"],
+    "pressure_low": ["iop_mmhg"],
+    "both_thickening": ["cst_um"],
     "pressure_after": ["iop_after_mmhg", "symptoms"],
     "alarm_symptoms": ["symptoms"],
     "too_soon": ["agent"],

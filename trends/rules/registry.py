@@ -6,6 +6,7 @@ from trends.rules import (
     acuity_method_changed,
     alarm_symptoms,
     away,
+    both_thickening,
     break_off,
     crossed_limit,
     crossed_limit_possible,
@@ -22,6 +23,8 @@ from trends.rules import (
     poor_scan,
     pressure,
     pressure_after,
+    pressure_check_due,
+    pressure_low,
     rise_since_withholding,
     same_day_both_implants,
     same_in_both_eyes,
@@ -34,6 +37,7 @@ from trends.rules import (
     too_soon,
     transposed,
     treatment_context,
+    unanswered,
     undecided,
     unit_doubt,
     unlikely_jump,
@@ -53,6 +57,7 @@ VISIT_RULES: tuple[ModuleType, ...] = (
     letters_lost,
     off_chart_step,
     pressure,
+    pressure_low,
     pressure_after,
     alarm_symptoms,
     too_soon,
@@ -68,6 +73,7 @@ VISIT_RULES: tuple[ModuleType, ...] = (
     unlikely_jump,
     unit_doubt,
     poor_scan,
+    both_thickening,
 )
 STANDING_RULES: tuple[ModuleType, ...] = (
     did_not_come,
@@ -76,6 +82,8 @@ STANDING_RULES: tuple[ModuleType, ...] = (
     away,
     no_plan,
     undecided,
+    pressure_check_due,
+    unanswered,
 )
 
 
