@@ -21,8 +21,9 @@ FAR = 10**9
 def first_day(v: Visits, happened: Bools) -> Ints:
     """Return the eye's first day at which something happened (n,); FAR where never."""
     eyes = np.full(v.offsets.size, FAR, dtype=np.int64)
-    at = np.flatnonzero(happened)
-    np.minimum.at(eyes, v.eye[at], v.day[at])
+    # Rows stand by day, and of those written to one place the last stays: so from the end.
+    at = np.flatnonzero(happened)[::-1]
+    eyes[v.eye[at]] = v.day[at]
     return eyes[v.eye]
 
 

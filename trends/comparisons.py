@@ -7,7 +7,7 @@ from typing import Any, TypeVar
 import numpy as np
 
 from trends import fellow, words
-from trends.comparable import NONE, Previous, last_before, previous
+from trends.comparable import NONE, Previous, last_of_eye, previous
 from trends.visits import MISSING, Bools, Ints, Visits
 
 Kept = TypeVar("Kept")
@@ -35,7 +35,7 @@ class Comparisons:
     @cached_property
     def last_treatment(self) -> Ints:
         """The last recorded treatment on an earlier day, or NONE."""
-        return last_before(self.v, self.v.eye.astype(np.int64), self.v.given == 1)
+        return last_of_eye(self.v, self.v.given == 1)
 
     @cached_property
     def cst_given(self) -> Bools:
@@ -75,7 +75,7 @@ class Comparisons:
     def acuity_any(self) -> Ints:
         """The last acuity of any method and age on an earlier day, or NONE."""
         given = np.asarray(self.v.acuity_level >= 0)
-        return last_before(self.v, self.v.eye.astype(np.int64), given)
+        return last_of_eye(self.v, given)
 
     @cached_property
     def measured_kind(self) -> Bools:

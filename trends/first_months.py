@@ -91,7 +91,7 @@ def since_first(v: Visits, row: int) -> tuple[int, int]:
     The first is a row on or before that day, or NONE.
     """
     start, day = int(v.offsets[v.eye[row]]), int(v.day[row])
-    end = int(np.searchsorted(v.eye, v.eye[row], side="right"))
+    end = int(v.offsets[v.eye[row] + 1])
     given = np.flatnonzero((v.given[start:end] == 1) & (v.day[start:end] <= day)) + start
     first = int(given[0]) if given.size else NONE
     return first, int((v.day[given] < day).sum())

@@ -11,7 +11,7 @@ from typing import Any
 
 import numpy as np
 
-from trends.comparable import NONE, grouped, last_before
+from trends.comparable import NONE, grouped, last_of_eye
 from trends.comparisons import Comparisons
 from trends.lowest import Window
 from trends.visits import Bools, Ints, Visits
@@ -47,7 +47,7 @@ class LikeScans:
     def gap(self) -> Bools:
         """Whether a visit since that treatment didn't record what was given."""
         blank = (self.v.given < 0) & ~self.v.is_contact
-        unknown = last_before(self.v, self.v.eye.astype(np.int64), blank)
+        unknown = last_of_eye(self.v, blank)
         later = self.v.day[np.maximum(unknown, 0)] > self.v.day[np.maximum(self.treatment, 0)]
         return np.asarray((unknown >= 0) & ((self.treatment < 0) | later))
 

@@ -10,7 +10,7 @@ from typing import Any
 
 import numpy as np
 
-from trends.comparable import NONE, grouped
+from trends.comparable import NONE, grouped, last_of_eye
 from trends.comparisons import Comparisons
 from trends.visits import Bools, Ints, Visits
 
@@ -76,9 +76,14 @@ class Lowest:
     @cached_property
     def incomparable(self) -> Bools:
         """Scans with two earlier usable ones or more, but not two that compare."""
-        few = self.c.cst_given & (self.comparable.count < 2)
-        eye = self.v.eye.astype(np.int64)
-        return np.asarray(few & (Window.of(self.v, eye, self.usable, self.days, few).count >= 2))
+        v, out = self.v, np.zeros(len(self.v), dtype=bool)
+        rows = np.flatnonzero(self.c.cst_given & (self.comparable.count < 2))
+        until = np.maximum.accumulate(np.where(self.usable, np.arange(len(v)), NONE))
+        last = last_of_eye(v, self.usable)[rows]
+        before = np.where(last > 0, until[np.maximum(last - 1, 0)], NONE)
+        near = v.day[rows] - v.day[before] <= self.days
+        out[rows] = (before >= v.offsets[v.eye[rows]]) & near
+        return out
 
     @cached_property
     def two(self) -> tuple[Ints, Ints]:

@@ -7,6 +7,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from trends.comparable import last_before, last_of_eye
 from trends.limits import shipped
 from trends.lowest import Lowest
 from trends.review import comparisons
@@ -82,3 +83,28 @@ def test_any_number_of_scans_is_looked_through(count: int) -> None:
     v = Visits.from_frame(pd.DataFrame(rows))
     lowest, second = Lowest(v, comparisons(v, shipped("general")), DAYS).two
     assert (int(lowest[count]), int(second[count])) == (count - 1, count - 2)
+
+
+@settings(max_examples=60, deadline=None)
+@given(st.lists(st.tuples(st.integers(0, 3), st.integers(0, 4), st.booleans()), min_size=1))
+def test_the_last_row_of_an_eye_is_what_sorting_finds(
+    visits: list[tuple[int, int, bool]],
+) -> None:
+    # Several rows of a day differ in kind; only earlier days count.
+    kinds, seen, rows = ("planned", "unscheduled", "contact", "treatment_only"), {}, []
+    for person, day, given_now in visits:
+        kind = seen.get((person, day), 0)
+        if kind < len(kinds):
+            seen[person, day] = kind + 1
+            rows.append(
+                {
+                    "person": f"P{person}",
+                    "eye": "R",
+                    "date": f"2026-01-{day + 1:02d}",
+                    "kind": kinds[kind],
+                    "agent": "aflibercept" if given_now else "",
+                }
+            )
+    v = Visits.from_frame(pd.DataFrame(rows))
+    by_sorting = last_before(v, v.eye.astype("int64"), v.given == 1)
+    assert last_of_eye(v, v.given == 1).tolist() == by_sorting.tolist()
