@@ -32,11 +32,6 @@ class FirstMonths:
         return np.asarray((self.day_zero < FAR) & ~history.treated_before_log(self.v))
 
     @cached_property
-    def every(self) -> Ints:
-        """One key for all rows: compared whatever the method."""
-        return np.zeros(len(self.v), dtype=np.int64)
-
-    @cached_property
     def days(self) -> Ints:
         """Days since day 0; negative before it, and where there is none."""
         return np.asarray(self.v.day - self.day_zero, dtype=np.int64)

@@ -183,3 +183,14 @@ def judged_one(
         since=since,
         extra=extra or {},
     )
+
+
+def spread(found: Judged, rows: Ints, size: int, extra: dict[str, Any]) -> Judged:
+    """Return what was judged of some rows (k,) of ``size``; the rule applies to none other."""
+    none = np.zeros(size, dtype=bool)
+    columns = {"outcome": verdict(known=none, applies=none, raised=none)}
+    for name, absent in (("rank", NO_RANK), ("ref", -1), ("part", -1), ("missing", 0)):
+        columns[name] = np.full(size, absent, dtype=SMALL[name])
+    for name, column in columns.items():
+        column[rows] = getattr(found, name)
+    return Judged(**columns, extra=extra)

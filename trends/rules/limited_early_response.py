@@ -10,7 +10,6 @@ a third to a half of such eyes gained ten letters by two years. Left out: eyes t
 Raised: 55 letters and 420 µm, after three injections 58 and 378. Not: 61 letters and 330 µm.
 """
 
-from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -18,12 +17,11 @@ import numpy as np
 from trends import saying, words
 from trends.comparisons import Comparisons
 from trends.first_months import FirstMonths, first_months, since_first
-from trends.fluid import by_class
+from trends.first_response import Response, in_letters
 from trends.limits import Table
 from trends.measures.logmar import LETTER_E4
-from trends.ruling import Description, Judged, Part, RuleInfo, any_of, bit
-from trends.verdict import RANKS
-from trends.visits import MISSING, Bools, Ints, Visits
+from trends.ruling import Description, Judged, Part, RuleInfo, any_of, bit, spread
+from trends.visits import MISSING, Bools, Visits
 
 INFO = RuleInfo(
     id="limited_early_response",
@@ -35,129 +33,45 @@ INFO = RuleInfo(
     parts=("letters", "thickness by a fifth", "thickness by a tenth", "excess"),
 )
 WEEK = 7
-FALLS = {"thickness by a fifth": "fall_fifth", "thickness by a tenth": "fall_tenth"}
-
-
-@dataclass(frozen=True)
-class Scans:
-    """The usable comparable scan on or before day 0 (n,), and whether there is any of any class."""
-
-    base: Ints
-    any: Bools
+FALLS = ("fall_fifth", "fall_tenth")
 
 
 def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     """Judge all visits at once; only one an eye is asked."""
     first = first_months(v, c)
-    asked = _asked(first, c, limits)
-    unsure = _maybe(first, c, limits) & ~asked
-    usable = c.cst_given & ~c.poor
-    scans = Scans(
-        first.last_at_zero(c.cst_key, usable), first.last_at_zero(first.every, usable) >= 0
-    )
-    letters = _letters(v, c, first, limits)
-    parts = [letters]
-    parts += [_fall(v, c, scans, limits, FALLS[name]) for name in INFO.parts[1:3]]
-    parts.append(_excess(v, c, scans, limits))
-    untold = Part(unsure, np.zeros(len(v), bool), np.zeros(len(v), bool), 0, None, bit("agent"))
-    judged = any_of(
-        [_only(part, asked) for part in parts] + [untold], c.followed & (asked | unsure)
-    )
-    judged.extra.update(_evidence(np.flatnonzero(asked), scans, letters, judged))
-    return judged
+    asked, maybe = _asked(v, limits, c, first)
+    rows = np.flatnonzero(asked | maybe)
+    response = Response(c, first, limits, rows, asked[rows])
+    parts = [response.few_letters(), *map(response.small_fall, FALLS), response.excess_left()]
+    none = np.zeros(rows.size, dtype=bool)
+    untold = Part(~response.asked, none, none, 0, None, bit("agent"))
+    found = any_of([*parts, untold], c.followed[rows])
+    letters = parts[0].applies & parts[0].known
+    evidence = {
+        "rows": rows[response.asked],
+        "scan": response.scan[response.asked],
+        "letters": response.letters[response.asked],
+        "by_letters": np.where(found.part >= 0, found.part == 0, letters)[response.asked],
+    }
+    return spread(found, rows, len(v), evidence)
 
 
-def _evidence(rows: Ints, scans: Scans, letters: Part, judged: Judged) -> dict[str, Any]:
-    """Keep of the asked rows both baselines, and whether the letters' one is the reference."""
-    told: Bools = letters.applies & letters.known
-    base = np.where(letters.known, np.asarray(letters.ref), -1)
-    by_letters = np.where(judged.part >= 0, judged.part == 0, told)
-    names = {"scan": scans.base, "letters": base, "by_letters": by_letters}
-    return {"asked": rows, **{name: column[rows] for name, column in names.items()}}
-
-
-def _only(part: Part, asked: Bools) -> Part:
-    return Part(part.applies & asked, part.known, part.met, part.rank, part.ref, part.missing)
-
-
-def _in_window(first: FirstMonths, c: Comparisons, limits: Table) -> Bools:
-    """Return visits in the weeks asked about, with anything to compare."""
-    measured = c.measured_kind & (c.cst_given | _counted(first.v, c))
-    days, early, late = first.days, limits.number("from_days"), limits.number("to_days")
-    return np.asarray(first.known & measured & (days >= early) & (days <= late))
-
-
-def _counted(v: Visits, c: Comparisons) -> Bools:
-    """Return acuities in letters: with a value, on a five-letter chart."""
-    return np.asarray(c.letters_given & (v.five_letter_chart == 1))
-
-
-def _first(first: FirstMonths, rows: Bools) -> Bools:
-    """Return the first of the marked rows of each eye."""
-    at = np.flatnonzero(rows)
-    _eyes, place = np.unique(first.v.eye[at], return_index=True)
-    out = np.zeros(len(first.v), dtype=bool)
-    out[at[place]] = True
-    return out
-
-
-def _asked(first: FirstMonths, c: Comparisons, limits: Table) -> Bools:
-    enough = first.injections >= limits.number("injections")
-    return _first(first, _in_window(first, c, limits) & enough)
-
-
-def _maybe(first: FirstMonths, c: Comparisons, limits: Table) -> Bools:
-    """Return visits that would be asked if a treatment not recorded had been an injection."""
-    least = limits.number("injections")
-    fewer = (first.injections < least) & (first.at_most >= least)
-    return np.asarray(_in_window(first, c, limits) & fewer)
-
-
-def _letters(v: Visits, c: Comparisons, first: FirstMonths, limits: Table) -> Part:
-    on, five = bool(limits["letters"]), limits.number("gain_e4")
-    counted = _counted(v, c)
-    base = first.last_at_zero(c.acuity_key, counted)
-    any_base = first.last_at_zero(first.every, c.letters_given)
-    gain = v.logmar_e4[base].astype(np.int64) - v.logmar_e4
-    known = counted & (base >= 0)
-    applies = on & np.where(counted, any_base >= 0, (v.acuity_level < 0) & (any_base >= 0))
-    method = bit("acuity_chart") | bit("acuity_correction")
-    missing = np.where(counted, method, bit("acuity"))
-    return Part(np.asarray(applies), known, gain < five, RANKS[str(limits["rank"])], base, missing)
-
-
-def _scan_missing(v: Visits, c: Comparisons, unsure: Bools) -> Ints:
-    given = np.where(c.cst_given, bit("oct_class"), bit("cst_um"))
-    return np.where(unsure, bit("scan_quality"), given)
-
-
-def _fall(v: Visits, c: Comparisons, scans: Scans, limits: Table, name: str) -> Part:
-    scan, base = scans.base, v.cst_um[scans.base].astype(np.int64)
-    less = 1000 * (base - v.cst_um) < limits.number(f"{name}_permille") * base
-    told = c.cst_given & (scan >= 0)
-    unsure = told & c.poor & ~less
-    applies = bool(limits[name]) & scans.any
-    rank = RANKS[str(limits["rank"])]
-    return Part(applies, told & ~unsure, less, rank, scan, _scan_missing(v, c, unsure))
-
-
-def _excess(v: Visits, c: Comparisons, scans: Scans, limits: Table) -> Part:
-    normal = by_class(limits, "normal_um", v.oct_class, MISSING)
-    scan, base = scans.base, v.cst_um[scans.base].astype(np.int64)
-    thick = (normal != MISSING) & ((scan < 0) | (base > normal))
-    gone = 1000 * (base - v.cst_um) < limits.number("excess_permille") * (base - normal)
-    diabetic = v.cause == words.CAUSES.index("diabetic")
-    told = c.cst_given & (scan >= 0) & diabetic
-    unsure = told & c.poor & ~gone
-    applies = bool(limits["excess"]) & thick & scans.any & (diabetic | (v.cause < 0))
-    missing = np.where(v.cause < 0, bit("cause"), _scan_missing(v, c, unsure))
-    return Part(applies, told & ~unsure, gone, RANKS[str(limits["rank"])], scan, missing)
+def _asked(v: Visits, limits: Table, c: Comparisons, first: FirstMonths) -> tuple[Bools, Bools]:
+    """Return the visits asked, and those that would be if what wasn't recorded was an injection."""
+    measured = c.measured_kind & (c.cst_given | in_letters(v, c)) & first.known
+    days, least = first.days, limits.number("injections")
+    within = measured & (days >= limits.number("from_days")) & (days <= limits.number("to_days"))
+    enough = np.flatnonzero(within & (first.injections >= least))
+    asked = np.zeros(len(v), dtype=bool)
+    asked[enough[np.unique(v.eye[enough], return_index=True)[1]]] = True
+    maybe = within & (first.injections < least) & (first.at_most >= least)
+    return asked, np.asarray(maybe)
 
 
 def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     """Put one row into words: every definition with its numbers, met or not."""
-    at, limit = int(np.searchsorted(judged.extra["asked"], row)), _limit_words(limits)
-    asked = at < judged.extra["asked"].size and int(judged.extra["asked"][at]) == row
+    at, limit = int(np.searchsorted(judged.extra["rows"], row)), _limit_words(limits)
+    asked = at < judged.extra["rows"].size and int(judged.extra["rows"][at]) == row
     when = f"{saying.eye(v, row)}: {_after_first(v, row)}"
     if not asked:
         return Description(f"{when}; {_when_asked(limits)}", limit=limit)
@@ -237,7 +151,7 @@ def _limit_words(limits: Table) -> str:
     said = []
     if limits["letters"]:
         said.append(f"fewer than {limits.number('gain_e4') / LETTER_E4:g} letters gained")
-    for name in FALLS.values():
+    for name in FALLS:
         if limits[name]:
             said.append(f"thinner by less than {limits.number(f'{name}_permille') / 10:g} %")
     if limits["excess"]:
