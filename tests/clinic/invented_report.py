@@ -197,7 +197,7 @@ def report(code: str = "K7QX3M9TAB", visits: int = 18, note: str = "") -> c.Pati
         "Harbour eye clinic",
         PRINTED,
         "Demo Recorder",
-        "0.1.0",
+        "0.2.0",
         NOTICE,
         eyes,
         "born 1957 · female",

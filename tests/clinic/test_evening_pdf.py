@@ -28,7 +28,7 @@ def content(count: int) -> EveningList:
         dt.date(2026, 3, 5),
         dt.datetime(2026, 3, 4, 18, 0),
         "Demo Recorder",
-        "0.1.0",
+        "0.2.0",
         NOTICE,
         ("Planned: ranibizumab 0.5 mg 7, aflibercept 2 mg 4. 3 people for both eyes.",),
         tuple(

@@ -61,7 +61,7 @@ def test_it_says_whose_it_is_what_it_covers_who_printed_and_by_which_limits(made
         "printed 4 Mar 2026 16:05 by Demo Recorder",
         "Limit set general 1.0.0 (diabetic), adopted 1 Feb 2026 by Demo Clinician",
         "ledger seal 5f2a 91c0 7be4",
-        "Ebbline 0.1.0",
+        "Ebbline 0.2.0",
     ):
         assert words in first
 
