@@ -157,6 +157,19 @@ def test_the_reference_of_a_personal_reading_is_the_scan_it_is_compared_with() -
     ) in told.arithmetic
 
 
+def test_an_unscheduled_scan_or_an_unknown_treatment_moves_no_reference() -> None:
+    columns = ["week", "kind", *COLUMNS[1:]]
+    doses = [[week, "planned", 75, 300, "faricimab", week + 8] for week in (0, 4, 8, 12)]
+    more = [
+        [20, "planned", 75, 260, "faricimab", 28],
+        [27, "unscheduled", 75, 255, "none", ""],  # would be the second low scan
+        [28, "planned", 75, 255, "", ""],
+        [29, "planned", 75, 255, "none", ""],
+    ]
+    case = {"regimen": "personal_interval", "columns": columns, "visits": [*doses, *more]}
+    assert spoken(visits_of(case)).ref.tolist() == [-1, -1, -1, 3, 3, 3, 6, -1]
+
+
 def test_a_personal_reading_shows_its_cell_and_the_mean_of_the_best_letters() -> None:
     visits = [*MONTHLY, [12, 74, 300, "faricimab", 20], [20, 69, 345, "none", ""]]
     told = spoken(course("personal_interval", *visits)).describe(4)

@@ -65,15 +65,17 @@ def test_the_best_letters_before_are_those_of_a_plain_loop(visits: list[Any], co
     letters = np.append(value, 0)
     scale, correction = np.append(key % 2, 0), np.append(key // 2, 0)
     r = Readings(has, zeros, zeros, has, has, has, letters, scale, correction)
-    best = BestLetters(courses, r, dose > 1, courses.at, np.asarray(count))
+    counts = 1 + courses.at % count  # each visit may average another number of the best
+    best = BestLetters(courses, r, dose > 1, courses.at, counts)
     for p in range(len(visits)):
         like = [
             int(value[q])
             for q in range(courses.start[p], p)
             if dose[q] > 1 and usable[q] and usable[p] and key[q] == key[p]
         ]
-        top = sorted(like, reverse=True)[:count]
+        ordered = sorted(like, reverse=True)
+        top = ordered[: counts[p]]
         told = [one for one in best.best[p].tolist() if one != NO_LETTERS]
         if usable[p]:
-            assert told == top
+            assert told == ordered[: counts.max()]
             assert (int(best.total[p]), int(best.number[p])) == (sum(top), len(top))
