@@ -22,9 +22,10 @@ def not_before(courses: Courses, day: Ints, days: Ints) -> Ints:
 
 @dataclass(frozen=True)
 class Since:
-    """The stretch before each position that counts: same course and key, from ``first`` on.
+    """The stretch before each position that counts: of the same key, from ``first`` on.
 
-    ``key`` (m,) is equal where values compare; ``usable`` (m,) says which positions hold one.
+    ``first`` (m,) lies within the course; ``key`` (m,) is equal where values compare; ``usable``
+    (m,) says which positions hold one.
     """
 
     courses: Courses
@@ -34,8 +35,8 @@ class Since:
 
     @cached_property
     def _group(self) -> Ints:
-        joined = self.courses.start.astype(np.int64) * (int(self.key.max(initial=0)) + 1) + self.key
-        _each, group = np.unique(joined, return_inverse=True)
+        # The course needs no part in it: a stretch never reaches back beyond ``first``.
+        _each, group = np.unique(self.key, return_inverse=True)
         return np.asarray(group, dtype=np.int64)
 
     @cached_property
