@@ -94,7 +94,7 @@ def swap_eyes(day: dict[str, Row], eye: str, draw: random.Random) -> bool | None
 
 def exchange_digits(day: dict[str, Row], eye: str, draw: random.Random) -> bool | None:
     text = day[eye].get("cst_um", "")
-    places = [p for p in range(len(text) - 1) if text[p] != text[p + 1] and text[p + 1 - p] != "0"]
+    places = [p for p in range(len(text) - 1) if text[p] != text[p + 1]]
     if len(text) != 3 or not places:
         return None
     place = draw.choice(places)

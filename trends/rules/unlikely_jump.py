@@ -9,6 +9,8 @@ about. It asks, it never corrects.
 Raised: 300, 310, 305, then 671 µm. Not: then 670.
 """
 
+from dataclasses import replace
+
 import numpy as np
 
 from trends import predicted, saying
@@ -44,18 +46,18 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
     rose = off_iop * 10 > limits.number("iop_tenths")
     steroid = Baseline(v, c).steroid_day < v.day
     jumped = (rose & ~steroid) | (-off_iop * 10 > limits.number("iop_tenths"))
-    alone = (v.iop_tenths > limits.number("high_tenths")) | (
-        v.iop_tenths < limits.number("low_tenths")
-    )
+    high = (v.iop_tenths > limits.number("high_tenths")) & ~steroid
+    alone = high | (v.iop_tenths < limits.number("low_tenths"))
     parts = [
         Part(cst.given & cst.known, cst.given, far, rank, cst.three[0]),
         Part(letters.given & letters.known, letters.given, off_letters, rank, letters.three[0]),
         Part(iop.given & iop.known, iop.given, jumped, rank, iop.three[0]),
-        Part(iop.given, iop.given, alone & ~steroid, rank),
+        Part(iop.given, iop.given, alone, rank),
     ]
     given = c.cst_given | c.letters_given | iop.given
     blank: Ints = np.where(given, 0, bit("cst_um") | bit("acuity") | bit("iop_mmhg"))
-    return any_of(parts, c.followed & (given | c.measured_kind), blank)
+    judged = any_of(parts, c.followed & (given | c.measured_kind), blank)
+    return replace(judged, extra={"comparisons": c})
 
 
 COLUMNS = ("cst_um", "acuity", "iop_mmhg", "iop_mmhg")
@@ -78,10 +80,7 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
     arithmetic = []
     if which >= 0:
         sentence += ", far from what was measured before" if ref >= 0 else ", seldom measured"
-        arithmetic = [f"{INFO.parts[which]}: beyond the limit"]
-        if ref >= 0 and which == 0:
-            before, um = int(v.cst_um[ref]), int(v.cst_um[row])
-            arithmetic = [f"{um} / {before} = {um / before:.2f}, last of the three before"]
+        arithmetic = _worked(v, judged, row, limits, which)
     return Description(
         sentence=sentence,
         values=values,
@@ -96,3 +95,17 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
         not_for=["a rise of pressure after a steroid", "a proof: real jumps happen"],
         reference_value=None,
     )
+
+
+def _worked(v: Visits, judged: Judged, row: int, limits: Table, which: int) -> list[str]:
+    """Return the arithmetic against the median of the last three, by which it was judged."""
+    if which >= len(CHANNELS):
+        return [f"{int(v.iop_tenths[row]) / 10:g} mmHg by itself"]
+    one = predicted.channel(v, judged.extra["comparisons"], limits, CHANNELS[which])
+    middle = float(one.centre[row])
+    if which == 0:
+        um, before = int(v.cst_um[row]), round(float(np.exp(middle)))
+        return [f"{um} / {before} = {um / before:.2f}, {before} µm the median of the last three"]
+    now = float(one.scaled[row])
+    told = f"{now:g} − {middle:g} = {now - middle:+g}, {middle:g} the median of the last three"
+    return [told.replace("= -", "= −")]
