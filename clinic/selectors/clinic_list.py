@@ -115,7 +115,12 @@ def clinic_list(here: Here, day: dt.date, today: dt.date) -> ClinicList:
     said = exceptions(here.site)
     plans, seen = day_plans(here.site, day), seen_on(here.site, day)
     rows = eyes_on(here.site, day, today, plans, seen, said)
-    asked = Asked(day, today, plans, standing_items(rows, here.site, today), titles())
+    # What waits for an answer stands on the list itself, with its visit; said twice it is noise.
+    standing = {
+        eye: [item for item in items if item["rule"] != "unanswered"]
+        for eye, items in standing_items(rows, here.site, today).items()
+    }
+    asked = Asked(day, today, plans, standing, titles())
     ticks = dict(
         RecordDone.objects.filter(patient__in={now.eye.patient_id for now in rows}, day=day)
         .order_by("seq")

@@ -17,9 +17,20 @@ RANK_WORDS = {
 }
 # Rules that state the same fact in other ways are merged under the highest of them.
 SAME_FACT = (
-    ("thickening", "crossed_limit", "fluid_back", "thickening_possible", "crossed_limit_possible"),
+    (
+        "thickening",
+        "rise_since_withholding",
+        "drift",
+        "crossed_limit",
+        "fluid_back",
+        "slow_rise",
+        "thickening_possible",
+        "crossed_limit_possible",
+        "both_thickening",
+    ),
     ("letters_lost", "off_chart_step"),
-    ("pressure", "pressure_after"),
+    ("pressure", "pressure_after", "pressure_low", "pressure_check_due"),
+    ("looks_like_other_eye", "unlikely_jump", "transposed", "unit_doubt", "same_in_both_eyes"),
     ("did_not_come", "late", "break_off", "away", "no_plan"),
 )
 SIDE_WORDS = {"R": "Right eye", "L": "Left eye"}
