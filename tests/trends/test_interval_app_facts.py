@@ -209,6 +209,8 @@ def test_the_place_of_a_steroid_is_the_end_of_its_trial_interval() -> None:
         "trial interval until 22 July 2024",
     ]
     assert one.interval_weeks.tolist() == [-1, 26, 26, -1, 15]
+    # The last reading doesn't know what was given last.
+    assert one.ref.tolist() == [-1, -1, 1, 1, -1]
     unknown = spoken(with_history(course("implant", [0, 60, 300, "none", ""]), treatments=None))
     assert unknown.place(0) == "history not entered"
 
