@@ -50,6 +50,8 @@ def test_printed_probabilities(n: int, s: int, p: float) -> None:
 def test_the_least_s_is_the_first_that_is_rare_enough() -> None:
     assert slope.least_s(6, 50) == 13
     assert slope.least_s(5, 50) == 10
+    # At or below: every S of six is as rare as 1.
+    assert slope.least_s(6, 1000) == 1
     # Four values can't reach p 0.05 (least p 2/24): none of theirs is ever enough.
     assert slope.least_s(4, 50) == 7
 
