@@ -5,7 +5,7 @@ thickness under changing intervals rises without any change of the disease. Rais
 like scans rise by Mann-Kendall's test with its exact null distribution (two-sided p at or below
 0.05). Source: Mann 1945, Kendall 1975; the requirement of like times from simulated eyes. It would
 rather miss than raise falsely: fewer than six can't tell. Left out on purpose: how steep the rise
-is; the working shows the Theil-Sen slope.
+is (the working shows the Theil-Sen slope), and that the test is asked again at every visit.
 
 Raised: 300, 304, 309, 315, 318, 325 four weeks after each injection. Not: 300, 304, 299, 305, 303.
 """
@@ -21,6 +21,10 @@ from trends.states import entered
 from trends.visits import MISSING, Visits
 
 DAYS_A_YEAR = 365.25
+ASKED_ANEW = (
+    "the test is asked anew at each visit: over the years chance alone raises some eyes that don't "
+    "change, more of them where neighboring scans are alike"
+)
 INFO = RuleInfo(
     id="slow_rise",
     version=1,
@@ -98,7 +102,7 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
         ],
         limit=limit,
         noise=fluid.noise_words(v, limits, row, ref),
-        unknowns=fluid.doubts(v, judged, row, ref),
+        unknowns=[*fluid.doubts(v, judged, row, ref), ASKED_ANEW],
         options=[
             "look at the scans side by side, at the same time after the same agent",
             "weigh it together with acuity and fluid",
