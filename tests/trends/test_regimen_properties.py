@@ -32,6 +32,9 @@ REGIMENS = [
     "long_interval",
     "personal_interval",
     "implant",
+    "as_needed_vision",
+    "as_needed_rvo",
+    "watch_until_loss",
 ]
 
 

@@ -2,10 +2,11 @@
 
 Criteria to withhold: fewer than five letters gained or lost at each of the last two visits after
 loading, or 84 letters or more at both; a clinician has to confirm it, since the published test is
-the investigator's opinion and has no number. Suspended by a visit with nothing given. Criteria to
-retreat: five or more letters lost since then, and new fluid or ten per cent more thickness with it.
-Source: RESTORE; the numbers are a stand-in. Population: diabetic macular edema with visual
-impairment. It leans to treating. Left out on purpose: suspending by itself.
+the investigator's opinion and has no number. Suspended by a visit with nothing given; an
+unscheduled visit suspends nothing and isn't one of the two. Criteria to retreat: five or more
+letters lost since then, and new fluid or ten per cent more thickness with it. Source: RESTORE; the
+numbers are a stand-in. Population: diabetic macular edema with visual impairment. It leans to
+treating. Left out on purpose: suspending by itself.
 
 Withhold: 70 at the third dose, then 72 and 73. Retreat: suspended at 73, then 67 with more fluid.
 """
@@ -55,7 +56,7 @@ def _compared(courses: VisionCourses, p: int) -> list[int]:
     held, one = int(courses.held_from[p]), int(courses.previous[p])
     if held != NONE:
         return [held]
-    two = int(courses.before(courses.previous, courses.own)[p])
+    two = int(courses.before(courses.previous, courses.paced)[p])
     return [at for at in (two, one) if at != NONE]
 
 
@@ -64,6 +65,7 @@ def _lines(courses: VisionCourses, p: int) -> list[str]:
 
 
 def _place(courses: VisionCourses, p: int) -> str:
-    if int(courses.held_from[p]) != NONE and not courses.visited.injected[p]:
+    held = int(courses.held_from[p]) != NONE and courses.visited.nothing_given[p]
+    if (held and not courses.agent_unknown[p]) or courses.suspends[p]:
         return "suspended"
     return plain_words.place(courses, p)

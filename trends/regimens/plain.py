@@ -66,6 +66,11 @@ class Plain:
         return ~self.visited.skipped
 
     @cached_property
+    def paced(self) -> Bools:
+        """Visits of their own that weren't unscheduled: those a rule counts as running."""
+        return np.asarray(self.own & ~self.visited.kind_is("unscheduled"))
+
+    @cached_property
     def cause(self) -> Ints:
         """The cause of each position."""
         return self.visited.v.cause[self.visited.at]

@@ -7,7 +7,7 @@ import numpy as np
 
 from trends import words
 from trends.regimens import truth
-from trends.regimens.courses import NONE, Ints
+from trends.regimens.courses import NONE, Bools, Ints
 from trends.regimens.plain import Plain
 from trends.regimens.readings import Said
 from trends.regimens.spoken import AtPositions
@@ -62,7 +62,7 @@ class RvoCourses(Plain):
         return bits | self.treatment_lacks()
 
     @property
-    def loading_now(self) -> "np.ndarray[tuple[int], np.dtype[np.bool_]]":
+    def loading_now(self) -> Bools:
         """Whether the monthly doses aren't complete."""
         return np.asarray(self.injections < self.number("loading"))
 
@@ -77,10 +77,11 @@ class RvoCourses(Plain):
         load = said == Said.LOADING
         zero = np.zeros(said.size, dtype=np.int64)
         loading = np.broadcast_to(self.number("loading"), said.shape)
+        interval = np.broadcast_to(self.number("interval_weeks"), said.shape)
         return AtPositions(
             said=said,
             numbers=(np.where(load, self.injections + 1, 0), np.where(load, loading, 0), zero),
             missing=self.lacks,
             ref=np.full(said.size, NONE),
-            interval_weeks=np.full(said.size, int(np.max(self.number("interval_weeks")))),
+            interval_weeks=np.where(self.visited.not_recorded, NONE, interval),
         )

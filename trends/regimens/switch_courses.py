@@ -46,9 +46,19 @@ class SwitchCourses(Plain):
         known = self.first_day != NO_DAY
         return np.where(known, self.visited.day - np.where(known, self.first_day, 0), -1)
 
-    def _from_week(self, name: str) -> Bools:
+    @cached_property
+    def began_earlier(self) -> Bools:
+        """Whether injections before the log may have begun the course earlier than is known."""
+        w = self.visited
+        before = w.earlier_injections(np.asarray(self.number("loading")))
+        dated = (before == 1) & (w.earlier_last_day != NO_DAY) & ~w.loaded_before
+        return np.asarray(w.history_unknown | w.loaded_before | ((before > 0) & ~dated))
+
+    def _from_week(self, name: str) -> Truth:
+        """Whether a week is reached; an earlier beginning than is known can only bring it on."""
         days = DAYS_IN_WEEK * self.number(name) - self.number("window_days")
-        return np.asarray(self.weeks_days >= days)
+        reached = self.weeks_days >= days
+        return truth.answer(reached | ~self.began_earlier, reached)
 
     @cached_property
     def two_before(self) -> tuple[Ints, Ints]:
@@ -96,10 +106,13 @@ class SwitchCourses(Plain):
     def poor_vision(self) -> Truth:
         """Whether letters are low enough for the week of the course."""
         r = self.visited.readings
-        most = np.where(
-            self._from_week("late_week"), self.number("letters_late"), self.number("letters_early")
+        letters, has = r.letters[:-1], r.has_letters[:-1]
+        early = letters <= self.number("letters_early")
+        late = truth.both(
+            self._from_week("late_week"),
+            truth.answer(has, letters <= self.number("letters_late")),
         )
-        return truth.answer(r.has_letters[:-1], r.letters[:-1] <= most)
+        return truth.either(truth.answer(has, early), late)
 
     @cached_property
     def injected_twice(self) -> Truth:
@@ -114,10 +127,12 @@ class SwitchCourses(Plain):
     @cached_property
     def met(self) -> Truth:
         """All parts together; NO as soon as one is."""
-        time = truth.answer(np.ones(self.visited.at.size, bool), self._from_week("from_week"))
         diabetic = truth.answer(self.cause >= 0, self.cause == words.CAUSES.index("diabetic"))
         parts = (self.thick, truth.opposite(self.improved), self.poor_vision)
-        return truth.both(time, diabetic, self.injected_twice, *parts)
+        history = truth.where(self.visited.history_unknown, UNKNOWN, YES)
+        return truth.both(
+            self._from_week("from_week"), diabetic, self.injected_twice, history, *parts
+        )
 
     @cached_property
     def told(self) -> AtPositions:
@@ -141,7 +156,10 @@ class SwitchCourses(Plain):
         one, two = self.two_before
         bits = np.where(self.cause < 0, bit("cause"), 0)
         bits |= np.where(self.injected_twice == UNKNOWN, bit("agent"), 0)
-        bits |= np.where(self.poor_vision == UNKNOWN, self.acuity_lacks(at), 0)
+        lettered = self.poor_vision == UNKNOWN
+        bits |= np.where(lettered, self.acuity_lacks(at), 0)
+        week = (self._from_week("from_week") == UNKNOWN) | (lettered & r.has_letters[:-1])
+        bits |= np.where(week | self.visited.history_unknown, bit("hist_treatments"), 0)
         scan = np.where(r.has_cst[:-1], bit("oct_class"), bit("cst_um"))
         between = r.has_cst[:-1] & (self.visited.v.sex[self.visited.at] < 0)
         scan = np.where(

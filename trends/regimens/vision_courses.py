@@ -49,8 +49,8 @@ class VisionCourses(Plain):
 
     @cached_property
     def previous(self) -> Ints:
-        """The visit of its own before each one."""
-        return self.visited.courses.last_before(self.own)
+        """The visit before each one that counts; one out of turn isn't a second without gain."""
+        return self.visited.courses.last_before(self.paced)
 
     def _stalled(self, now: Ints, before: Ints) -> Truth:
         """Whether letters neither rose nor fell by the limits between two visits."""
@@ -63,7 +63,7 @@ class VisionCourses(Plain):
     def stable(self) -> Truth:
         """Too little gained at two visits running after loading, or good letters at two."""
         at, one = self.visited.courses.at, self.previous
-        two = self.before(one, self.own)
+        two = self.before(one, self.paced)
         stalled = truth.both(self._stalled(at, one), self._stalled(one, two))
         after = self.loaded & (one != NONE) & self.loaded[one]
         r, good = self.visited.readings, self.number("good_letters")
@@ -74,13 +74,18 @@ class VisionCourses(Plain):
         return truth.either(truth.where(after, stalled, NO), truth.where(one == NONE, NO, high))
 
     @cached_property
+    def suspends(self) -> Bools:
+        """Visits at which nothing was given when the criteria were met: a clinician's decision."""
+        met = self.loaded & (self.stable == YES) & (self.treatment_lacks() == 0)
+        return np.asarray(self.visited.nothing_given & self.paced & met)
+
+    @cached_property
     def held_from(self) -> Ints:
         """The visit at which treatment was suspended, while it is; NONE otherwise."""
         w, trail = self.visited, np.full(self.visited.at.size, NONE)
         first, _size = course_order(w.courses)
         held = np.full(first.size, NONE)
-        begins = w.nothing_given & self.own & self.loaded & (self.stable == YES)
-        begins &= self.treatment_lacks() == 0
+        begins = self.suspends
 
         def step(active: int, p: Ints) -> None:
             now = held[:active]
@@ -141,7 +146,7 @@ class VisionCourses(Plain):
         """Bits of the columns that keep the reading from an answer."""
         r, at, held = self.visited.readings, self.visited.courses.at, self.held_from
         one = self.previous
-        two = self.before(one, self.own)
+        two = self.before(one, self.paced)
         away = np.zeros(at.size, dtype=np.int64)
         for before, now in ((one, at), (two, one)):
             told = self._stalled(now, before)

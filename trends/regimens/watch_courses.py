@@ -25,7 +25,11 @@ class WatchCourses(Plain):
 
     @cached_property
     def baseline(self) -> tuple[Ints, Ints]:
-        """The course's first visit with letters, and the second if within the days set."""
+        """The course's first visit with letters, and the second if it belongs to the baseline.
+
+        It does within the days set, on a later day, with letters as good as the trial asked: a
+        fall right after the first visit is a loss, not a part of what it is counted from.
+        """
         w, at = self.visited, np.flatnonzero(self.counted)
         rank = w.courses.count_before(self.counted)
         pair = []
@@ -35,8 +39,11 @@ class WatchCourses(Plain):
             found[w.courses.start[mine]] = mine
             pair.append(found[w.courses.start])
         first, second = pair
-        near = w.day[second] - w.day[first] <= self.number("baseline_days")
-        both = (second != NONE) & near & self._comparable(first, second)
+        days = w.day[second] - w.day[first]
+        good = w.readings.letters[second] >= self.number("baseline_letters")
+        near = (days > 0) & (days <= self.number("baseline_days")) & good
+        both = (second != NONE) & (second <= w.courses.at) & near
+        both &= self._comparable(first, second)
         return first, np.where(both, second, NONE)
 
     def _comparable(self, one: Ints, two: Ints) -> Bools:
@@ -88,7 +95,7 @@ class WatchCourses(Plain):
         said = np.where(at_once | twice, Said.START, np.where(some, Said.WATCH_ONCE, Said.WATCH))
         diabetic = self.cause == words.CAUSES.index("diabetic")
         said = np.where(unsure | (self.cause < 0), Said.CANT_TELL, said)
-        treated = self.injections > 0
+        treated = self.visited.courses.count_before(self.visited.injected) > 0
         said = np.where(treated | ((self.cause >= 0) & ~diabetic), Said.NOTHING, said)
         zero = np.zeros(said.size, dtype=np.int64)
         return AtPositions(

@@ -1,10 +1,11 @@
 """Watch an eye with good vision; criteria to start are met when letters are lost from baseline.
 
-Baseline is the mean of the first two acuities at most 28 days apart (one alone where there is no
-second). Criteria to start: ten or more letters lost at any visit, or five or more at two visits
-running. Source: protocol V. Population: center-involved diabetic macular edema with 79 letters or
-more at the start. It leans to watching, as the trial did. Left out on purpose: thickness, which the
-trial didn't start on; the courses of an eye once it is treated.
+Baseline is the mean of the first two acuities 1 to 28 days apart; the first alone where there is no
+second, or the second is below 79, which no eye of the trial had. Criteria to start: ten or more
+letters lost at any visit, or five or more at two visits running. Source: protocol V. Population:
+center-involved diabetic macular edema with 79 letters or more at the start. It leans to watching,
+as the trial did. Left out on purpose: thickness, which the trial didn't start on; treatments before
+the course; the visits of the course once the eye is treated.
 
 Start: baseline 84, then 74; or 78 and then 77. Not: 78, 80, 79.
 """
@@ -57,7 +58,8 @@ def _before(courses: WatchCourses, p: int) -> int:
 
 
 def _place(courses: WatchCourses, p: int) -> str:
-    treated = int(courses.injections[p] + courses.visited.injected[p]) > 0
+    w = courses.visited
+    treated = bool(w.injected[p]) or int(w.courses.count_before(w.injected)[p]) > 0
     return "treated" if treated else "watched"
 
 
