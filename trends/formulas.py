@@ -107,6 +107,14 @@ def _perfusion(given: Given) -> list[str]:
     return [*_map(given), f"2/3 × {mean:.1f} − {iop} = {found:.1f} mmHg"]
 
 
+def _part_perfusion(given: Given) -> list[str]:
+    iop = given["iop"]
+    return [
+        f"{given[name]} − {iop} = {pressure.part_perfusion(given[name], iop):g} mmHg"
+        for name in ("systolic", "diastolic")
+    ]
+
+
 def _osmotic(given: Given) -> list[str]:
     tenths = given["protein_tenths"]
     shown = " + ".join(f"{one:.2f}" for one in osmosis.terms(tenths))
@@ -161,6 +169,7 @@ WORKERS: Mapping[str, Worker] = {
     "repeatability": _repeat,
     "mean_arterial_pressure": _map,
     "perfusion_pressure": _perfusion,
+    "part_perfusion_pressure": _part_perfusion,
     "colloid_osmotic_pressure": _osmotic,
     "theil_sen": _theil_sen,
     "mann_kendall": _mann_kendall,

@@ -4,6 +4,7 @@ from dataclasses import dataclass
 
 from clinic.chart.spoken import spoken
 from clinic.content import Dated, EyeReport, VisitRow
+from clinic.fluid_words import FLUID, TITLE
 from clinic.reports.chart_drawing import ChartDrawing
 from clinic.reports.column_widths import Row
 from clinic.reports.fonts import STAYS
@@ -54,7 +55,7 @@ def eye_section(sheet: Sheet, eye: EyeReport, around: Around) -> None:
     _dated(sheet, "Treatment courses", eye.courses)
     _dated(sheet, "Eye events", eye.events)
     _dated(sheet, "Contacts", eye.contacts)
-    _context(sheet, eye)
+    _context(sheet, eye, words=around.first)
 
 
 def _facts(sheet: Sheet, eye: EyeReport) -> None:
@@ -171,10 +172,13 @@ def _dated(sheet: Sheet, title: str, lines: tuple[Dated, ...]) -> None:
         sheet.pair(day_words(line.day) or "undated", [joined((line.what, line.note))])
 
 
-def _context(sheet: Sheet, eye: EyeReport) -> None:
-    """Write the context numbers apart."""
+def _context(sheet: Sheet, eye: EyeReport, *, words: bool) -> None:
+    """Write the context numbers apart, once in the report with what they stand for in words."""
     if not eye.context:
         return
     sheet.heading(3, "Context, not used by any rule", keep=30)
     for row in eye.context:
         sheet.pair(row.what, [joined((row.amount, row.note))])
+    if words:
+        sheet.gap(4)
+        sheet.text(f"{TITLE}. {' '.join(FLUID)}", size=7.6, tone=QUIET)

@@ -1,4 +1,4 @@
-"""Context of the whole person beside one eye: blood pressure, protein, and since best and baseline.
+"""Context of the whole person beside one eye: blood pressure and protein.
 
 Used by no rule. An estimate is shown with its formula's caveat, or not at all where it would
 mislead: perfusion only with a pressure of the same day, protein for so many days only.
@@ -10,7 +10,7 @@ from collections.abc import Sequence
 from clinic.adapters.facts import standing
 from clinic.chart.spoken import day_words
 from clinic.content import ContextRow
-from clinic.models import Measured, PersonFact
+from clinic.models import PersonFact
 from clinic.selectors.eye_log import EyeLog
 from trends.measures import osmosis, pressure
 from trends.measures.ranges import ranges
@@ -19,10 +19,10 @@ Kind = PersonFact.Kind
 
 
 def body_rows(log: EyeLog, today: dt.date) -> tuple[ContextRow, ...]:
-    """Return what blood pressure, protein, and the best and first values say beside this eye."""
+    """Return what blood pressure and protein say beside this eye."""
     facts = [one.entry for one in standing(PersonFact.objects.filter(patient=log.eye.patient))]
     known = [fact for fact in facts if fact.day <= today]
-    return (*_pressures(log, known), *_protein(known, today), *_since(log))
+    return (*_pressures(log, known), *_protein(known, today))
 
 
 def _newest(facts: Sequence[PersonFact], kind: str) -> PersonFact | None:
@@ -49,16 +49,26 @@ def _pressures(log: EyeLog, facts: Sequence[PersonFact]) -> list[ContextRow]:
         if visit.day == fact.day and row.iop_tenths is not None
     ]
     if same:
-        iop = same[-1] / 10
-        rows.append(
-            ContextRow(
-                "Mean ocular perfusion pressure",
-                f"{pressure.perfusion(high, low, iop):.0f} mmHg",
-                f"2/3 of {mean:.1f} − IOP {iop:g} the same day; an estimate, seated; no agreed "
-                "limit for macular edema (Van Keer 2016)",
-            )
-        )
+        rows += _perfusion(high, low, same[-1] / 10, fact.day)
     return rows
+
+
+def _perfusion(high: int, low: int, iop: float, on: dt.date) -> list[ContextRow]:
+    mean = pressure.mean_arterial(high, low)
+    return [
+        ContextRow(
+            "Mean ocular perfusion pressure",
+            f"{pressure.perfusion(high, low, iop):.0f} mmHg",
+            f"2/3 of {mean:.1f} − IOP {iop:g} the same day, {day_words(on)}; an estimate, seated; "
+            "no agreed limit for macular edema (Van Keer 2016)",
+        ),
+        ContextRow(
+            "Systolic, diastolic perfusion pressure",
+            f"{pressure.part_perfusion(high, iop):g}, {pressure.part_perfusion(low, iop):g} mmHg",
+            f"{high} − {iop:g}, {low} − {iop:g}, {day_words(on)}; an estimate, brachial cuff "
+            "(from memory, check the original)",
+        ),
+    ]
 
 
 def _protein(facts: Sequence[PersonFact], today: dt.date) -> list[ContextRow]:
@@ -77,36 +87,3 @@ def _protein(facts: Sequence[PersonFact], today: dt.date) -> list[ContextRow]:
     return [
         ContextRow(what, f"about {osmosis.colloid_osmotic(fact.protein_tenths):.1f} mmHg", note)
     ]
-
-
-def _since(log: EyeLog) -> list[ContextRow]:
-    """Return letters and thickness now against the best and the first by the same method."""
-    rows = []
-    measured = log.pairs("measured")
-    letters = [(visit.day, row) for visit, row in measured if row.letters is not None]
-    if len(letters) > 1:
-        day, now = letters[-1]
-        same = [(on, row) for on, row in letters if _acuity_method(row) == _acuity_method(now)]
-        best_on, best = max(same[:-1], key=lambda one: one[1].letters or 0, default=(day, now))
-        first_on, first = same[0]
-        if len(same) > 1:
-            rows += [
-                _change("Letters since the best", best.letters, now.letters, best_on, "letters"),
-                _change("Letters since the first", first.letters, now.letters, first_on, "letters"),
-            ]
-    scans = [(visit.day, row) for visit, row in measured if row.cst_um is not None]
-    same_class = [one for one in scans if scans and one[1].oct_class == scans[-1][1].oct_class]
-    if len(same_class) > 1:
-        (on, first), (_day, now) = same_class[0], same_class[-1]
-        rows.append(_change("CST since the first", first.cst_um, now.cst_um, on, "µm"))
-    return rows
-
-
-def _acuity_method(row: Measured) -> tuple[str, str, str]:
-    return row.acuity_notation, row.acuity_chart, row.acuity_correction
-
-
-def _change(what: str, was: int | None, now: int | None, on: dt.date, unit: str) -> ContextRow:
-    change = (now or 0) - (was or 0)
-    shown = f"{change:+d}".replace("-", "−") if change else "0"
-    return ContextRow(what, f"{shown} {unit}", f"{was} on {day_words(on)}, {now} now; a fact only")

@@ -5,8 +5,10 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any
 
+from clinic.clinic_days import exceptions, last_ended_day
 from clinic.models import ContactEntry, EyeNow, PatientStatus
 from clinic.selectors.access import Here
+from clinic.selectors.adopted import adopted_for, of_cause
 from clinic.selectors.list_items import RANK_WORDS, RANKS, SIDE_SLUGS, SIDE_WORDS
 from clinic.selectors.standing import standing_items
 from clinic.selectors.visit_words import listed
@@ -67,10 +69,12 @@ def awaiting(here: Here, today: dt.date) -> list[Waiting]:
 def unanswered(here: Here, today: dt.date) -> list[Waiting]:
     """Return eyes with something raised first that nobody answered since yesterday, oldest first.
 
-    What counts as unanswered is the rule's own; without an adopted set the floor still raises.
+    What counts as unanswered is the rule's own. Where no set is adopted only the floor raises and
+    no rule of the day runs: then whatever was raised before the last ended day counts.
     """
     rows = [now for now in active_eyes(here) if now.unanswered_since is not None]
     standing = standing_items(rows, here.site, today)
+    adopted, ended = adopted_for(here.site), last_ended_day(today, exceptions(here.site))
     found = [
         Waiting(
             now,
@@ -80,6 +84,7 @@ def unanswered(here: Here, today: dt.date) -> list[Waiting]:
         )
         for now in rows
         if any(item["rule"] == "unanswered" for item in standing.get(now.eye_id, []))
+        or (of_cause(adopted, now.cause) is None and (now.unanswered_since or today) < ended)
     ]
     return sorted(found, key=lambda one: (-one.days, one.now.eye.patient.code))
 

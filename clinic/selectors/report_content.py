@@ -11,6 +11,7 @@ from clinic.notice import NOTICE
 from clinic.selectors.chart_given import EyeRows, eye_given
 from clinic.selectors.context_body import body_rows
 from clinic.selectors.context_rows import context_rows
+from clinic.selectors.context_since import since_rows
 from clinic.selectors.eye_log import EyeLog, eye_logs
 from clinic.selectors.eye_verdicts import EyeVerdicts, verdicts_for
 from clinic.selectors.eye_words import (
@@ -109,7 +110,7 @@ def eye_report(
         courses=course_lines(log.courses),
         events=event_lines(log.events),
         contacts=contact_lines(log),
-        context=(*context_rows(log, today), *body_rows(log, today)),
+        context=(*context_rows(log, today), *since_rows(log), *body_rows(log, today)),
     )
 
 

@@ -29,6 +29,14 @@ def dose_text(dose_ug: int | None) -> str:
     return "" if dose_ug is None else f"{dose_ug / UG_A_MG:g}{STAYS}mg"
 
 
+def weeks_words(days: int) -> str:
+    """Return days as whole weeks passed, or as days in the first week."""
+    if days < 7:
+        return f"{days} day{'' if days == 1 else 's'}"
+    weeks = days // 7
+    return f"{weeks} week{'' if weeks == 1 else 's'}"
+
+
 def iop_text(tenths: int | None) -> str:
     """Return a pressure in mmHg."""
     return "" if tenths is None else f"{shown(tenths)}{STAYS}mmHg"

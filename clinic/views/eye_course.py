@@ -14,6 +14,7 @@ from clinic.chart import Panels
 from clinic.chart.figure import figure
 from clinic.chart.spoken import spoken
 from clinic.content import EyeReport
+from clinic.fluid_words import FLUID, TITLE
 from clinic.selectors.access import CLINICIAN, WRITERS, eye_for, site_for
 from clinic.selectors.report_content import both_eyes_chart, report_content
 
@@ -63,6 +64,8 @@ def eye_course(request: HttpRequest, slug: str, code: str, side: str) -> HttpRes
         "dated": dated_lists(eye),
         "eye_screens": EYE_SCREENS if here.may(*WRITERS) else (),
         "may_answer": here.may(CLINICIAN),
+        "fluid_title": TITLE,
+        "fluid_words": FLUID,
     }
     return render(request, "eye_course/eye_course.html", context)
 

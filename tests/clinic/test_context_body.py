@@ -10,7 +10,7 @@ import pytest
 from clinic.models import PersonFact
 from clinic.selectors.context_body import body_rows
 from clinic.selectors.eye_log import eye_logs
-from tests.clinic.at_the_desk import NOW, SEEN, TODAY, Desk, days_ago
+from tests.clinic.at_the_desk import NOW, TODAY, Desk, days_ago
 
 pytestmark = pytest.mark.django_db
 Kind = PersonFact.Kind
@@ -52,13 +52,15 @@ def test_perfusion_is_shown_with_a_pressure_of_the_same_day() -> None:
     assert rows["Mean arterial pressure"][0] == "93 mmHg"
     amount, note = rows["Mean ocular perfusion pressure"]
     assert amount == "47 mmHg" and "estimate" in note and "seated" in note
+    amount, note = rows["Systolic, diastolic perfusion pressure"]
+    assert amount == "105, 65 mmHg" and "from memory, check the original" in note
 
 
 def test_perfusion_is_not_shown_with_a_pressure_of_another_day() -> None:
     told = Told()
     told.measured(10, iop_tenths=150, iop_method="applanation")
     told.fact(9, Kind.BLOOD_PRESSURE, systolic_mmhg=120, diastolic_mmhg=80)
-    assert "Mean ocular perfusion pressure" not in told.rows()
+    assert list(told.rows()) == ["Mean arterial pressure"]
 
 
 def test_colloid_osmotic_pressure_says_how_wrong_it_can_be() -> None:
@@ -73,17 +75,6 @@ def test_an_old_protein_gives_no_estimate() -> None:
     told.fact(91, Kind.TOTAL_PROTEIN, protein_tenths=70)
     amount, note = told.rows()["Plasma colloid osmotic pressure"]
     assert amount == "not estimated" and "older than 90 days" in note
-
-
-def test_letters_and_thickness_are_set_against_the_best_and_the_first() -> None:
-    told = Told()
-    for ago, letters, um in ((90, 60, 450), (60, 75, 350), (30, 70, 320)):
-        acuity = {**SEEN, "acuity": str(letters), "letters": letters}
-        told.measured(ago, **acuity, **told.desk.scan(um))
-    rows = told.rows()
-    assert rows["Letters since the best"][0] == "−5 letters"
-    assert rows["Letters since the first"][0] == "+10 letters"
-    assert rows["CST since the first"][0] == "−130 µm"
 
 
 def test_nothing_is_shown_where_nothing_is_known() -> None:

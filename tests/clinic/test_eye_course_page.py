@@ -8,6 +8,7 @@ from django.test import Client
 from django.urls import reverse
 
 from clinic import codes
+from clinic.fluid_words import FLUID, TITLE
 from clinic.models import Entry
 from clinic.notice import NOTICE
 from tests.clinic.a_person import Person, a_history, a_site, a_user, adopted
@@ -183,3 +184,12 @@ def test_the_evening_list_is_a_pdf_and_noted_for_the_site(person: Person, reader
     assert answer.status_code == 200
     assert answer.content.startswith(b"%PDF-")
     assert Entry.objects.get(action="list.printed").subject == "2026-03-05"
+
+
+def test_what_moves_water_stands_in_words_beside_the_context(
+    reader: Client, person: Person
+) -> None:
+    shown = page(reader, person)
+    context = shown[shown.index("Context, not used by any rule") :]
+    assert TITLE in context
+    assert all(words in context for words in FLUID)

@@ -5,11 +5,11 @@ import datetime as dt
 import pytest
 from time_machine import travel
 
-from clinic.models import EyeNow
+from clinic.models import EyeNow, IntakeFile, Visit
 from clinic.selectors.access import site_for
 from clinic.selectors.following import gone_quiet, unanswered
 from clinic.selectors.standing import standing_items
-from tests.clinic.at_the_desk import GIVEN, NOW, TODAY, Desk, days_ago, eye_of
+from tests.clinic.at_the_desk import GIVEN, NOW, TODAY, Desk, days_ago, eye_of, open_rules
 
 pytestmark = pytest.mark.django_db
 
@@ -73,3 +73,32 @@ def test_what_was_raised_today_does_not_wait_yet() -> None:
     patient = desk.enrol("R")
     desk.save(patient, "measured", TODAY, R=iop(36))
     assert unanswered(site_for(desk.reader, desk.site.slug), TODAY) == []
+
+
+def test_what_came_by_intake_is_never_asked_about() -> None:
+    desk = Desk()
+    patient = desk.enrol("R")
+    file = IntakeFile.objects.create(
+        site=desk.site,
+        sha256="0" * 64,
+        visits_stored=1,
+        cells_refused=0,
+        rows=1,
+        at=NOW,
+        by=desk.recorder,
+    )
+    taken_in = {"from_intake": file, "at": NOW, "by": desk.recorder}
+    Visit.objects.create(patient=patient, day=days_ago(3), kind="planned", **taken_in)
+    desk.save(patient, "measured", days_ago(3), R=iop(36))
+    assert "pressure" in open_rules(patient)
+    assert EyeNow.objects.get(eye=eye_of(patient, "R")).unanswered_since is None
+    assert unanswered(site_for(desk.reader, desk.site.slug), TODAY) == []
+
+
+def test_an_alarm_waits_before_any_set_is_adopted_too() -> None:
+    desk = Desk(adopt=False)
+    patient = desk.enrol("R")
+    desk.save(patient, "measured", days_ago(2), R=iop(36))
+    here = site_for(desk.reader, desk.site.slug)
+    assert [one.days for one in unanswered(here, TODAY)] == [2]
+    assert unanswered(here, days_ago(1)) == []

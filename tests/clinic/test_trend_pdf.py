@@ -12,6 +12,7 @@ import pdfplumber
 import pytest
 from pypdf import PdfReader
 
+from clinic.fluid_words import TITLE
 from clinic.notice import NOTICE
 from clinic.reports import trend
 from clinic.reports.fonts import FILES, FOLDER
@@ -110,6 +111,13 @@ def test_open_and_given_answers_and_corrections_are_printed(made: bytes) -> None
     text = " ".join(text_of(made))
     assert "CST corrected from 450 µm: typing error" in text
     assert "13 Oct 2025 Thickening Weigh today open" in text
+
+
+def test_what_moves_water_is_said_once_in_words_beside_the_context(made: bytes) -> None:
+    text = " ".join(text_of(made))
+    assert text.count(TITLE) == 1
+    assert text.index("Context, not used by any rule") < text.index(TITLE)
+    assert "hydrostatic pressure" in text and "oncotic pressure" in text and "pumps water" in text
 
 
 def test_it_is_tagged_with_language_headings_tables_and_described_figures(

@@ -94,4 +94,29 @@ def test_a_raised_pair_says_what_a_negative_means_and_shows_the_person() -> None
     one = next(rule_rows(reviewed, "both_thickening", [1]))
     assert one.outcome == "raised" and one.working
     assert any("means nothing" in line for line in one.working["unknowns"])
+    # ln(340/300) = 0.12516 and ln(400/350) = 0.13353, each by 0.035 x 1.41421 = 0.049497:
+    # 2.53 and 2.70; 5.2264 by the root of 2.2 (1.48324) is 3.52.
+    assert one.working["arithmetic"] == [
+        "ln(340 / 300) / (0.035 × √2) = +2.53",
+        "ln(400 / 350) / (0.035 × √2) = +2.70",
+        "(2.53 + 2.70) / √(2 × (1 + 0.1)) = +3.52",
+    ]
+    assert {x["value"] for x in one.working["values"]} >= {"300", "340", "350", "400"}
     assert ("blood pressure", "150/92") in [(x["what"], x["value"]) for x in one.working["values"]]
+
+
+def test_a_change_beyond_three_is_cut_and_said_to_be() -> None:
+    """ln(4/3) = 0.28768 by 0.049497 = 5.81, cut to 3; ln(363/350) = 0.036469 by it = 0.7368."""
+    rows = [*pair("2026-01-01", "300", "350"), *pair("2026-02-01", "400", "363")]
+    names = ("eye", "date", "cst_um", "oct_class", "scan_quality")
+    frame = pd.DataFrame([{"person": "p", **dict(zip(names, row, strict=True))} for row in rows])
+    v = Visits.from_frame(frame)
+    reviewed = review(v, shipped("general"), dt.date(2027, 1, 1), only=["both_thickening"])
+    one = next(rule_rows(reviewed, "both_thickening", [1]))
+    assert one.outcome == "raised" and one.working
+    # 3.7368 by 1.48324.
+    assert one.working["arithmetic"] == [
+        "ln(400 / 300) / (0.035 × √2) = +3.00, cut to ±3",
+        "ln(363 / 350) / (0.035 × √2) = +0.74",
+        "(3.00 + 0.74) / √(2 × (1 + 0.1)) = +2.52",
+    ]

@@ -274,6 +274,13 @@ def test_perfusion_pressure_is_two_thirds_of_map_minus_iop(row: dict[str, Any]) 
     assert abs(found - float(row["wrong"])) > 1
 
 
+@pytest.mark.parametrize("arterial,iop,expected", [(120, 15, 105), (80, 15, 65), (60, 18, 42)])
+def test_systolic_and_diastolic_perfusion_take_the_iop_off(
+    arterial: int, iop: int, expected: int
+) -> None:
+    assert pressure.part_perfusion(arterial, iop) == expected
+
+
 def test_a_swapped_blood_pressure_is_refused() -> None:
     with pytest.raises(EbblineError, match="swapped"):
         pressure.mean_arterial(80, 120)

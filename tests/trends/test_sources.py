@@ -137,6 +137,8 @@ EXPECTED = {
         "p = 2 of 720 orders = 0.0028",
     ],
     # 2.1 x 7 = 14.7; 0.16 x 49 = 7.84; 0.009 x 343 = 3.087
+    # 138 - 18 and 78 - 18.
+    "part_perfusion_pressure": ["138 − 18 = 120 mmHg", "78 − 18 = 60 mmHg"],
     "colloid_osmotic_pressure": ["C = 7.0 g/dL: 14.70 + 7.84 + 3.09 = 25.6 mmHg"],
     "perfusion_pressure": ["78 + (138 − 78) / 3 = 98.0 mmHg", "2/3 × 98.0 − 18 = 47.3 mmHg"],
 }

@@ -55,3 +55,11 @@ def mean_arterial(systolic: float, diastolic: float) -> float:
 def perfusion(systolic: float, diastolic: float, iop_mmhg: float) -> float:
     """Return mean ocular perfusion pressure, 2/3 MAP - IOP, mmHg: an estimate, seated."""
     return 2 * mean_arterial(systolic, diastolic) / 3 - iop_mmhg
+
+
+def part_perfusion(arterial_mmhg: float, iop_mmhg: float) -> float:
+    """Return systolic or diastolic perfusion pressure, mmHg: that arterial pressure minus IOP.
+
+    From memory, check the original.
+    """
+    return arterial_mmhg - iop_mmhg

@@ -57,7 +57,14 @@ def judge(v: Visits, limits: Table, c: Comparisons, today: int) -> Judged:
         rank=str(limits["rank"]),
         ref=np.where(told & pairs.any(scanned), c.cst.ref, -1),
         missing=np.where(poor, bit("scan_quality"), _why(c, pairs.any(both), lacking)),
-        extra={"total": best, "skipped": c.cst.skipped},
+        extra={
+            "total": best,
+            "z": z,
+            "other": pairs.first(both & (total == best[row])),
+            "before": before,
+            "before_row": c.cst.ref,
+            "skipped": c.cst.skipped,
+        },
     )
 
 
@@ -80,20 +87,20 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
             values=saying.values(v, row, -1, "cst_um"),
             limit=limit,
         )
-    total = float(judged.extra["total"][row])
     now, before = int(v.cst_um[row]), int(v.cst_um[ref])
-    told = np.isfinite(total)
+    told = int(judged.extra["other"][row]) >= 0
     sentence = f"{eye}: CST {before} to {now} µm ({saying.percent(now - before, before)})"
     sentence += "; the other eye was scanned too" if told else "; the other eye can't be compared"
     if int(judged.part[row]) >= 0:
         sentence = f"{eye} and the other eye thickened together: CST {before} to {now} µm here"
     return Description(
         sentence=f"{sentence}{saying.since(v, row, ref)}",
-        values=[*saying.values(v, row, ref, "cst_um"), *_person(v, row)],
-        arithmetic=[
-            f"ln({now} / {before}) = {np.log(now / before):+.3f}".replace("-", "−"),
-            *([f"standardised sum of both eyes {total:+.2f}".replace("-", "−")] if told else []),
+        values=[
+            *saying.values(v, row, ref, "cst_um"),
+            *_fellow(v, judged, row),
+            *_person(v, row),
         ],
+        arithmetic=_arithmetic(v, judged, row, limits),
         limit=limit,
         noise="3.5 % of one scan; about one pair of eyes in a hundred by chance",
         unknowns=[
@@ -108,6 +115,34 @@ def describe(v: Visits, judged: Judged, row: int, limits: Table) -> Description:
         not_for=["one eye alone", "naming a cause"],
         reference_value=before,
     )
+
+
+def _fellow(v: Visits, judged: Judged, row: int) -> list[dict[str, Any]]:
+    """Return the other eye's two scans, where they were compared."""
+    other = int(judged.extra["other"][row])
+    if other < 0:
+        return []
+    return saying.values(v, other, int(judged.extra["before_row"][other]), "cst_um")
+
+
+def _arithmetic(v: Visits, judged: Judged, row: int, limits: Table) -> list[str]:
+    """Return each eye's change against noise, then their sum; the other eye's where compared."""
+    noise = f"{limits.number('noise_permille') / 1000:g}"
+    eyes = [row] + ([other] if (other := int(judged.extra["other"][row])) >= 0 else [])
+    z = [float(judged.extra["z"][one]) for one in eyes]
+    most = limits.number("most_hundredths") / 100
+    before = judged.extra["before"]
+    lines = [
+        f"ln({int(v.cst_um[one])} / {int(before[one])}) / ({noise} × √2) = {part:+.2f}"
+        + (f", cut to ±{most:g}" if abs(part) >= most else "")
+        for one, part in zip(eyes, z, strict=True)
+    ]
+    if len(z) == len(saying.EYES):
+        shared = f"{limits.number('correlation_hundredths') / 100:g}"
+        total = float(judged.extra["total"][row])
+        both = f"{z[0]:.2f} {'−' if z[1] < 0 else '+'} {abs(z[1]):.2f}"
+        lines.append(f"({both}) / √(2 × (1 + {shared})) = {total:+.2f}")
+    return [line.replace("-", "−") for line in lines]
 
 
 def _person(v: Visits, row: int) -> list[dict[str, Any]]:
